@@ -1,0 +1,1 @@
+//! Bulk legs as a quantum code.

@@ -1,0 +1,1 @@
+//! Contraction plans run on an algebra.

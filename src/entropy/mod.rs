@@ -1,0 +1,1 @@
+//! Boundary regions to entropies, with evidence.

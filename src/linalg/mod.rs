@@ -1,0 +1,1 @@
+//! Dense linear algebra with checked spectra, an ndarray face over a pure-Rust backend.

@@ -1,0 +1,1 @@
+//! Patches of regular tilings {p,q}.
