@@ -19,7 +19,9 @@ pub enum RegionError {
         sites: usize,
     },
     /// A part that is neither a site, nor a range, nor a bulk leg's label.
-    #[error("region {region:?}: {part:?} is neither a site, nor a range a..b, nor a bulk leg's label")]
+    #[error(
+        "region {region:?}: {part:?} is neither a site, nor a range a..b, nor a bulk leg's label"
+    )]
     Unreadable {
         /// The region as written.
         region: String,

@@ -60,10 +60,7 @@ impl DenseTensor {
     /// [`TensorError::LabelCount`] where their counts differ.
     pub fn new(labels: Vec<Label>, data: Dense) -> Result<Self, TensorError> {
         if labels.len() != data.shape().len() {
-            return Err(TensorError::LabelCount {
-                labels: labels.len(),
-                axes: data.shape().len(),
-            });
+            return Err(TensorError::LabelCount { labels: labels.len(), axes: data.shape().len() });
         }
         Ok(Self { labels, data })
     }

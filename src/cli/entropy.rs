@@ -1,0 +1,17 @@
+//! `lierne entropy`.
+
+use super::{Common, Failure, Verdict};
+
+/// Arguments of `lierne entropy`.
+#[derive(Debug, clap::Args)]
+pub struct Args {
+    /// What the command works on
+    #[arg(value_name = "WORDS", trailing_var_arg = true, allow_hyphen_values = true)]
+    words: Vec<String>,
+}
+
+/// Runs the command.
+pub fn run(args: &Args, _common: &Common) -> Result<Verdict, Failure> {
+    let _ = &args.words;
+    Err(Failure::new("`lierne entropy` is not built yet"))
+}
