@@ -51,10 +51,7 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
     shape.check()?;
     let n = shape.tensors.len();
     if plan.steps.len() + 1 != n {
-        return Err(OrderError::StepCount {
-            found: plan.steps.len(),
-            tensors: n,
-        });
+        return Err(OrderError::StepCount { found: plan.steps.len(), tensors: n });
     }
     let labels = shape.sizes.len();
     let mut sliced = vec![false; labels];
@@ -62,16 +59,10 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
     for l in &plan.sliced {
         match sliced.get_mut(l.index()) {
             None => {
-                return Err(OrderError::SlicedUnknown {
-                    label: l.number(),
-                    labels,
-                });
+                return Err(OrderError::SlicedUnknown { label: l.number(), labels });
             }
             Some(s) if *s => {
-                return Err(OrderError::ListedTwice {
-                    label: l.number(),
-                    list: "sliced",
-                });
+                return Err(OrderError::ListedTwice { label: l.number(), list: "sliced" });
             }
             Some(s) => *s = true,
         }
@@ -81,10 +72,8 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
             .ok_or(OrderError::TooManySlices)?;
     }
     let (mut live, mut left) = leaves(shape, &sliced);
-    let elements = |set: &[u32]| {
-        set.iter()
-            .fold(Magnitude::ONE, |m, &l| m.times(shape.sizes[l as usize]))
-    };
+    let elements =
+        |set: &[u32]| set.iter().fold(Magnitude::ONE, |m, &l| m.times(shape.sizes[l as usize]));
     let mut alive = Magnitude::ZERO;
     let mut largest = Magnitude::ZERO;
     for leaf in live.iter().flatten() {
@@ -135,11 +124,8 @@ pub(super) fn leaves(shape: &Shape, sliced: &[bool]) -> (Vec<Option<Vec<u32>>>, 
         .tensors
         .iter()
         .map(|labels| {
-            let mut set: Vec<u32> = labels
-                .iter()
-                .filter(|l| !sliced[l.index()])
-                .map(|l| l.number())
-                .collect();
+            let mut set: Vec<u32> =
+                labels.iter().filter(|l| !sliced[l.index()]).map(|l| l.number()).collect();
             set.sort_unstable();
             set.dedup();
             set.iter().for_each(|&l| left[l as usize] += 1);
@@ -195,18 +181,10 @@ mod tests {
 
     fn shape(sizes: &[u64], tensors: &[&[u32]], open: &[u32]) -> Shape {
         let l = |s: &[u32]| s.iter().map(|&n| Label::new(n)).collect::<Vec<_>>();
-        Shape::new(
-            sizes.to_vec(),
-            tensors.iter().map(|t| l(t)).collect(),
-            l(open),
-        )
-        .unwrap()
+        Shape::new(sizes.to_vec(), tensors.iter().map(|t| l(t)).collect(), l(open)).unwrap()
     }
     fn plan(steps: &[(u32, u32)], sliced: &[u32]) -> Plan {
-        Plan {
-            steps: steps.to_vec(),
-            sliced: sliced.iter().map(|&n| Label::new(n)).collect(),
-        }
+        Plan { steps: steps.to_vec(), sliced: sliced.iter().map(|&n| Label::new(n)).collect() }
     }
 
     #[test]
@@ -245,13 +223,7 @@ mod tests {
     #[test]
     fn bad_plans_are_refused() {
         let s = shape(&[2], &[&[0], &[0]], &[]);
-        assert_eq!(
-            cost(&s, &plan(&[], &[])),
-            Err(OrderError::StepCount {
-                found: 0,
-                tensors: 2
-            })
-        );
+        assert_eq!(cost(&s, &plan(&[], &[])), Err(OrderError::StepCount { found: 0, tensors: 2 }));
         assert_eq!(
             cost(&s, &plan(&[(0, 0)], &[])),
             Err(OrderError::StepTensor { step: 0, tensor: 0 })
@@ -262,10 +234,7 @@ mod tests {
         );
         assert_eq!(
             cost(&s, &plan(&[(0, 1)], &[7])),
-            Err(OrderError::SlicedUnknown {
-                label: 7,
-                labels: 1
-            })
+            Err(OrderError::SlicedUnknown { label: 7, labels: 1 })
         );
     }
 }

@@ -57,45 +57,27 @@ pub fn save(path: &Path, shape: &Shape, plan: &Plan) -> Result<(), OrderError> {
 /// another shape, or holds steps that do not contract it.
 pub fn load(path: &Path, shape: &Shape) -> Result<Plan, OrderError> {
     let shown = || path.display().to_string();
-    let text = std::fs::read_to_string(path).map_err(|e| OrderError::File {
-        path: shown(),
-        reason: e.to_string(),
-    })?;
-    let format = |reason: String| OrderError::Format {
-        path: shown(),
-        reason,
-    };
+    let text = std::fs::read_to_string(path)
+        .map_err(|e| OrderError::File { path: shown(), reason: e.to_string() })?;
+    let format = |reason: String| OrderError::Format { path: shown(), reason };
     // The version is looked at first: another version may have other keys.
     let value: serde_json::Value =
         serde_json::from_str(&text).map_err(|e| format(e.to_string()))?;
     match value.get("lierne_plan").map(serde_json::Value::as_u64) {
         Some(Some(VERSION)) => {}
         Some(Some(found)) => {
-            return Err(OrderError::Version {
-                path: shown(),
-                found,
-                known: VERSION,
-            });
+            return Err(OrderError::Version { path: shown(), found, known: VERSION });
         }
         _ => {
-            return Err(format(
-                "it has no version number under \"lierne_plan\"".into(),
-            ));
+            return Err(format("it has no version number under \"lierne_plan\"".into()));
         }
     }
     let written: Written = serde_json::from_value(value).map_err(|e| format(e.to_string()))?;
     let expected = shape.hash();
     if written.shape != expected {
-        return Err(OrderError::OtherShape {
-            path: shown(),
-            found: written.shape,
-            expected,
-        });
+        return Err(OrderError::OtherShape { path: shown(), found: written.shape, expected });
     }
-    let plan = Plan {
-        steps: written.steps,
-        sliced: written.sliced,
-    };
+    let plan = Plan { steps: written.steps, sliced: written.sliced };
     cost(shape, &plan)?;
     Ok(plan)
 }

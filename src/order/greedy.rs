@@ -24,10 +24,7 @@ pub(crate) struct Rule {
 
 impl Default for Rule {
     fn default() -> Self {
-        Self {
-            alpha: 1.0,
-            noise: 0.0,
-        }
+        Self { alpha: 1.0, noise: 0.0 }
     }
 }
 
@@ -133,9 +130,7 @@ impl State<'_> {
             } else {
                 let sizes = &self.sizes;
                 list.sort_by(|&a, &b| {
-                    sizes[a as usize]
-                        .total_cmp(&sizes[b as usize])
-                        .then(a.cmp(&b))
+                    sizes[a as usize].total_cmp(&sizes[b as usize]).then(a.cmp(&b))
                 });
                 pairs.extend(list.windows(2).map(|w| (w[0].min(w[1]), w[0].max(w[1]))));
             }
@@ -156,10 +151,7 @@ impl State<'_> {
                 list.retain(|&t| live[t as usize].is_some());
             }
             near.extend(
-                list.iter()
-                    .rev()
-                    .filter(|&&t| t != c && live[t as usize].is_some())
-                    .take(CROWD),
+                list.iter().rev().filter(|&&t| t != c && live[t as usize].is_some()).take(CROWD),
             );
         }
         near.sort_unstable();
@@ -183,12 +175,7 @@ impl State<'_> {
             i += usize::from(p <= q);
             j += usize::from(q <= p);
         }
-        let mut figure = merit(
-            out,
-            self.sizes[a as usize],
-            self.sizes[b as usize],
-            self.rule,
-        );
+        let mut figure = merit(out, self.sizes[a as usize], self.sizes[b as usize], self.rule);
         if self.rule.noise > 0.0 {
             let u: f64 = self.rng.random();
             figure -= self.rule.noise * -(-(u.max(1e-300)).ln()).ln();

@@ -11,17 +11,9 @@ pub(crate) struct Magnitude {
 
 impl Magnitude {
     /// Nothing.
-    pub const ZERO: Self = Self {
-        exact: Some(0),
-        mantissa: 0.0,
-        exponent: 0,
-    };
+    pub const ZERO: Self = Self { exact: Some(0), mantissa: 0.0, exponent: 0 };
     /// One.
-    pub const ONE: Self = Self {
-        exact: Some(1),
-        mantissa: 1.0,
-        exponent: 0,
-    };
+    pub const ONE: Self = Self { exact: Some(1), mantissa: 1.0, exponent: 0 };
 
     fn tidy(mut self) -> Self {
         if let Some(n) = self.exact {
@@ -54,11 +46,7 @@ impl Magnitude {
     }
     fn scaled(self, exponent: i64) -> f64 {
         let gap = self.exponent - exponent;
-        if gap < -1000 {
-            0.0
-        } else {
-            self.mantissa * 2f64.powi(gap as i32)
-        }
+        if gap < -1000 { 0.0 } else { self.mantissa * 2f64.powi(gap as i32) }
     }
     /// The sum.
     pub fn plus(self, other: Self) -> Self {

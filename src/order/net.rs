@@ -64,9 +64,6 @@ impl Net {
 impl Plan {
     /// Steps without slices.
     pub(crate) fn unsliced(steps: Steps) -> Self {
-        Self {
-            steps,
-            sliced: Vec::new(),
-        }
+        Self { steps, sliced: Vec::new() }
     }
 }

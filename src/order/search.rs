@@ -80,15 +80,8 @@ pub fn search(shape: &Shape, request: &Request, watch: &dyn Watch) -> Result<Fou
                 (plan, price) = slice_once(shape, &plan, limit)?;
             }
         }
-        if best
-            .as_ref()
-            .is_none_or(|b| price.log10_multiply_adds < b.cost.log10_multiply_adds)
-        {
-            best = Some(Found {
-                plan,
-                cost: price,
-                method: "greedy".into(),
-            });
+        if best.as_ref().is_none_or(|b| price.log10_multiply_adds < b.cost.log10_multiply_adds) {
+            best = Some(Found { plan, cost: price, method: "greedy".into() });
         }
         if watch.stop() || watch.seconds() > request.seconds {
             break;
@@ -117,8 +110,6 @@ fn slice_once(shape: &Shape, plan: &Plan, limit: u64) -> Result<(Plan, Cost), Or
             best = Some((loss / gain, next, price));
         }
     }
-    best.map(|(_, p, c)| (p, c)).ok_or(OrderError::Memory {
-        limit,
-        needed: before.log2_peak_elements,
-    })
+    best.map(|(_, p, c)| (p, c))
+        .ok_or(OrderError::Memory { limit, needed: before.log2_peak_elements })
 }

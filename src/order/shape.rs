@@ -44,11 +44,7 @@ impl Shape {
         tensors: Vec<Vec<Label>>,
         open: Vec<Label>,
     ) -> Result<Self, OrderError> {
-        let shape = Self {
-            sizes,
-            tensors,
-            open,
-        };
+        let shape = Self { sizes, tensors, open };
         shape.check()?;
         Ok(shape)
     }
@@ -60,16 +56,8 @@ impl Shape {
             sizes: (0..network.labels() as u32)
                 .map(|l| network.dim(Label::new(l)) as u64)
                 .collect(),
-            tensors: network
-                .tensor_ids()
-                .map(|t| network.legs(t).to_vec())
-                .collect(),
-            open: network
-                .boundary()
-                .iter()
-                .chain(network.bulk())
-                .copied()
-                .collect(),
+            tensors: network.tensor_ids().map(|t| network.legs(t).to_vec()).collect(),
+            open: network.boundary().iter().chain(network.bulk()).copied().collect(),
         }
     }
 
@@ -83,10 +71,7 @@ impl Shape {
         }
         // A plan numbers inputs and results together in 32 bits.
         let limit = (u32::MAX / 2) as usize;
-        for (what, count) in [
-            ("tensors", self.tensors.len()),
-            ("labels", self.sizes.len()),
-        ] {
+        for (what, count) in [("tensors", self.tensors.len()), ("labels", self.sizes.len())] {
             if count > limit {
                 return Err(OrderError::TooMany { what, count, limit });
             }
@@ -115,10 +100,7 @@ impl Shape {
                 return Err(OrderError::OpenNowhere { label: l.number() });
             }
             if std::mem::replace(&mut listed[l.index()], true) {
-                return Err(OrderError::ListedTwice {
-                    label: l.number(),
-                    list: "open",
-                });
+                return Err(OrderError::ListedTwice { label: l.number(), list: "open" });
             }
         }
         Ok(())
