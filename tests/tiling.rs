@@ -11,9 +11,7 @@ fn patch(p: u64, q: u64, rings: u32, rule: Rule) -> Patch {
 }
 
 fn legs_by_ring(p: u64, q: u64, rings: u32, rule: Rule) -> Vec<usize> {
-    (0..=rings)
-        .map(|r| patch(p, q, r, rule).boundary_numbers().len())
-        .collect()
+    (0..=rings).map(|r| patch(p, q, r, rule).boundary_numbers().len()).collect()
 }
 
 /// Edge layers are the coordination sequences of the dual {q,p}: OEIS A054888, A001354,
@@ -35,11 +33,7 @@ fn edge_layers_have_the_published_sizes() {
     ];
     for (p, q, sizes) in table {
         let rings = sizes.len() as u32 - 1;
-        assert_eq!(
-            patch(p, q, rings, Rule::Edge).ring_sizes(),
-            sizes,
-            "{{{p},{q}}}"
-        );
+        assert_eq!(patch(p, q, rings, Rule::Edge).ring_sizes(), sizes, "{{{p},{q}}}");
     }
 }
 
@@ -56,11 +50,7 @@ fn edge_layers_leave_the_known_boundary() {
         (8, 3, &[8, 40, 152, 568]),
     ];
     for (p, q, legs) in table {
-        assert_eq!(
-            legs_by_ring(p, q, legs.len() as u32 - 1, Rule::Edge),
-            legs,
-            "{{{p},{q}}}"
-        );
+        assert_eq!(legs_by_ring(p, q, legs.len() as u32 - 1, Rule::Edge), legs, "{{{p},{q}}}");
     }
 }
 
@@ -80,11 +70,7 @@ fn vertex_inflation_has_the_known_layers_and_boundary() {
     ];
     for (p, q, sizes, legs) in table {
         let rings = sizes.len() as u32 - 1;
-        assert_eq!(
-            patch(p, q, rings, Rule::Vertex).ring_sizes(),
-            sizes,
-            "{{{p},{q}}}"
-        );
+        assert_eq!(patch(p, q, rings, Rule::Vertex).ring_sizes(), sizes, "{{{p},{q}}}");
         assert_eq!(legs_by_ring(p, q, rings, Rule::Vertex), legs, "{{{p},{q}}}");
     }
 }
@@ -116,10 +102,7 @@ fn vertex_inflation_grows_at_the_closed_rate() {
         let rings = if rate > 5.0 { 5 } else { 8 };
         let sizes = patch(p, q, rings, Rule::Vertex).ring_sizes();
         let ratio = sizes[rings as usize] as f64 / sizes[rings as usize - 1] as f64;
-        assert!(
-            (ratio / rate - 1.0).abs() < 2e-3,
-            "{tiling}: {ratio} against {rate}"
-        );
+        assert!((ratio / rate - 1.0).abs() < 2e-3, "{tiling}: {ratio} against {rate}");
     }
 }
 
@@ -142,10 +125,7 @@ fn rings_of_several_polygons_have_the_known_boundary() {
             })
             .collect()
     };
-    assert_eq!(
-        legs(&[5, 6], false, 8),
-        [5, 25, 75, 255, 745, 2525, 7375, 24995, 73005]
-    );
+    assert_eq!(legs(&[5, 6], false, 8), [5, 25, 75, 255, 745, 2525, 7375, 24995, 73005]);
     assert_eq!(legs(&[5, 6], true, 6), [5, 25, 95, 355, 1325, 4945, 18455]);
 }
 
@@ -206,31 +186,11 @@ fn lengths_match_the_table() {
                 3.625845008,
             ],
         ),
-        (
-            6,
-            4,
-            [
-                1.316957897,
-                0.881373587,
-                1.146215835,
-                0.517638090,
-                root2 - 1.0,
-                1.0,
-                root2,
-            ],
-        ),
+        (6, 4, [1.316957897, 0.881373587, 1.146215835, 0.517638090, root2 - 1.0, 1.0, root2]),
         (
             4,
             6,
-            [
-                1.762747174,
-                0.658478948,
-                1.146215835,
-                0.517638090,
-                0.317837245,
-                root2,
-                3f64.sqrt(),
-            ],
+            [1.762747174, 0.658478948, 1.146215835, 0.517638090, 0.317837245, root2, 3f64.sqrt()],
         ),
         (
             5,
@@ -258,10 +218,7 @@ fn lengths_match_the_table() {
             l.arc_centre.unwrap(),
         ];
         for (k, (a, b)) in found.iter().zip(known).enumerate() {
-            assert!(
-                (a - b).abs() < 6e-10,
-                "{{{p},{q}}} entry {k}: {a} against {b}"
-            );
+            assert!((a - b).abs() < 6e-10, "{{{p},{q}}} entry {k}: {a} against {b}");
         }
     }
 }
@@ -289,10 +246,7 @@ fn spherical_tilings_close_into_the_regular_solids() {
         ] {
             let mut growth = Growth::regular(tiling, 9, rule);
             growth.centre = centre;
-            let Err(TilingError::Closed {
-                tiles: t, possible, ..
-            }) = grow(&growth, LIMIT)
-            else {
+            let Err(TilingError::Closed { tiles: t, possible, .. }) = grow(&growth, LIMIT) else {
                 panic!("{tiling} must close");
             };
             assert_eq!(t, tiles, "{tiling}");
@@ -308,15 +262,9 @@ fn spherical_tilings_close_into_the_regular_solids() {
 /// Square rings 8r, hexagon rings 6r; triangles by the vertex rule 12, 24, …: counted on paper.
 #[test]
 fn euclidean_rings_grow_linearly() {
-    assert_eq!(
-        patch(4, 4, 4, Rule::Vertex).ring_sizes(),
-        [1, 8, 16, 24, 32]
-    );
+    assert_eq!(patch(4, 4, 4, Rule::Vertex).ring_sizes(), [1, 8, 16, 24, 32]);
     assert_eq!(patch(4, 4, 4, Rule::Edge).ring_sizes(), [1, 4, 8, 12, 16]);
-    assert_eq!(
-        patch(6, 3, 4, Rule::Vertex).ring_sizes(),
-        [1, 6, 12, 18, 24]
-    );
+    assert_eq!(patch(6, 3, 4, Rule::Vertex).ring_sizes(), [1, 6, 12, 18, 24]);
     assert_eq!(patch(3, 6, 3, Rule::Vertex).ring_sizes(), [1, 12, 24, 36]);
 }
 
@@ -330,10 +278,7 @@ fn a_vertex_may_be_the_middle() {
         let grown = grow(&growth, LIMIT).unwrap();
         let sizes = grown.ring_sizes();
         assert_eq!(sizes[0] as u64, q, "{tiling}");
-        assert!(
-            sizes[1..].iter().all(|s| *s as u64 % q == 0),
-            "{tiling}: {sizes:?}"
-        );
+        assert!(sizes[1..].iter().all(|s| *s as u64 % q == 0), "{tiling}: {sizes:?}");
         let (v, e, f) = grown.euler_counts();
         assert_eq!(v + f - e, 1, "{tiling}");
     }
@@ -408,16 +353,10 @@ fn the_boundary_runs_once_round_counter_clockwise() {
             if step <= -std::f64::consts::PI {
                 step += 2.0 * std::f64::consts::PI;
             }
-            assert!(
-                step > 0.0,
-                "{tiling}: site {k} does not lead counter-clockwise"
-            );
+            assert!(step > 0.0, "{tiling}: site {k} does not lead counter-clockwise");
             turned += step;
         }
-        assert!(
-            (turned - 2.0 * std::f64::consts::PI).abs() < 1e-9,
-            "{tiling}: {turned}"
-        );
+        assert!((turned - 2.0 * std::f64::consts::PI).abs() < 1e-9, "{tiling}: {turned}");
     }
 }
 
@@ -426,17 +365,11 @@ fn too_many_tiles_are_refused_at_once() {
     let tiling = Tiling::new(4, 5).unwrap();
     for rings in [11, 40, 1_000_000_000] {
         let refused = grow(&Growth::regular(tiling, rings, Rule::Vertex), LIMIT);
-        assert!(
-            matches!(refused, Err(TilingError::TooManyTiles { .. })),
-            "{rings}: {refused:?}"
-        );
+        assert!(matches!(refused, Err(TilingError::TooManyTiles { .. })), "{rings}: {refused:?}");
     }
     let flat = Tiling::new(4, 4).unwrap();
     let refused = grow(&Growth::regular(flat, 1_000_000_000, Rule::Edge), LIMIT);
-    assert!(
-        matches!(refused, Err(TilingError::TooManyTiles { .. })),
-        "{refused:?}"
-    );
+    assert!(matches!(refused, Err(TilingError::TooManyTiles { .. })), "{refused:?}");
     assert!(Tiling::new(2, 5).is_err() && Tiling::new(5, 1_000_000_000).is_err());
 }
 

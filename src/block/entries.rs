@@ -32,10 +32,7 @@ impl SparseEntries {
         let mut index: Vec<u64> = Vec::with_capacity(entries.len());
         let mut value: Vec<Complex64> = Vec::with_capacity(entries.len());
         for (place, x) in entries {
-            assert!(
-                place < size,
-                "place {place} lies outside an array of {size} entries"
-            );
+            assert!(place < size, "place {place} lies outside an array of {size} entries");
             if index.last() == Some(&place) {
                 *value.last_mut().expect("one value an index") += x;
             } else {

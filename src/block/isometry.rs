@@ -28,17 +28,11 @@ impl IsometryTable {
     /// The table of a perfect tensor: all sets of at most half the legs (all legs have one
     /// dimension; the caller has proven it).
     pub fn perfect(legs: usize) -> Self {
-        Self {
-            legs,
-            kind: Kind::Perfect,
-        }
+        Self { legs, kind: Kind::Perfect }
     }
     /// Nothing is known but that the tensor is not zero.
     pub fn unknown(legs: usize) -> Self {
-        Self {
-            legs,
-            kind: Kind::Unknown,
-        }
+        Self { legs, kind: Kind::Unknown }
     }
     /// Asks `isometric` about every subset. Above [`Self::MOST_LEGS`] legs nothing is asked
     /// and the table is [`Self::unknown`].
@@ -62,10 +56,7 @@ impl IsometryTable {
                 bits[(mask / 64) as usize] |= 1 << (mask % 64);
             }
         }
-        Self {
-            legs,
-            kind: Kind::Bits(bits),
-        }
+        Self { legs, kind: Kind::Bits(bits) }
     }
     /// Number of legs.
     pub fn legs(&self) -> usize {

@@ -1,1 +1,30 @@
 //! Boundary regions to entropies, with evidence.
+//!
+//! The state is the network read as a vector on its open legs; bulk legs that a region does
+//! not name belong to its complement, which holds the reference that they are entangled with.
+//! [`Asker`] (or [`of_region`] for a single question) takes the cheapest evidence that
+//! suffices:
+//!
+//! 1. [`cut`]: the minimal cut, always an upper bound;
+//! 2. [`closure`]: isometries absorbed from both sides; what is left is the core ([`Split`]);
+//! 3. contraction of each distinct piece of the core and its singular values;
+//! 4. proven bounds, with the price of the exact answer, where that does not fit.
+
+mod answer;
+mod ask;
+mod bounds;
+pub mod closure;
+mod contraction;
+pub mod cut;
+mod flow;
+mod solve;
+mod spectrum;
+mod the_core;
+mod wires;
+
+pub use answer::{Answer, EntropyError, Evidence, Part, Price, Request, Unsolved};
+pub use ask::{Asker, of_region};
+pub use bounds::bounds;
+pub use spectrum::{Level, Spectrum};
+pub use the_core::{Core, Piece, Split, split};
+pub use wires::{End, Node, Wires};

@@ -18,12 +18,7 @@ const TABLES: usize = 4;
 impl Bits {
     pub(super) fn zeros(rows: usize, cols: usize) -> Self {
         let stride = cols.div_ceil(64);
-        Self {
-            rows,
-            cols,
-            stride,
-            data: vec![0; rows * stride],
-        }
+        Self { rows, cols, stride, data: vec![0; rows * stride] }
     }
     #[inline]
     pub(super) fn get(&self, r: usize, c: usize) -> u32 {
@@ -137,9 +132,8 @@ impl Bits {
         // Words of the rows below, as if cleared by the pivots found so far, for the window
         // of columns under inspection.
         let mut window = *col / 64;
-        let mut seen: Vec<u64> = (0..self.rows - first)
-            .map(|r| self.data[(first + r) * self.stride + window])
-            .collect();
+        let mut seen: Vec<u64> =
+            (0..self.rows - first).map(|r| self.data[(first + r) * self.stride + window]).collect();
         while *col < self.cols && pivots.len() < self.rows && pivots.len() - first < group {
             if *col / 64 != window {
                 // The next word of every row must be brought up to date with the pivots of

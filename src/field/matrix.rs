@@ -40,10 +40,7 @@ impl Matrix {
             3 => Store::Trits(Trits::zeros(rows, cols)),
             _ => Store::Words(Words::zeros(rows, cols)),
         };
-        Self {
-            field: field.clone(),
-            store,
-        }
+        Self { field: field.clone(), store }
     }
     /// The identity.
     pub fn identity(field: &Field, size: usize) -> Self {
@@ -105,10 +102,7 @@ impl Matrix {
     #[inline]
     #[track_caller]
     pub fn get(&self, row: usize, col: usize) -> u32 {
-        assert!(
-            row < self.rows() && col < self.cols(),
-            "({row}, {col}) lies outside"
-        );
+        assert!(row < self.rows() && col < self.cols(), "({row}, {col}) lies outside");
         each!(&self.store, m => m.get(row, col))
     }
     /// Sets entry (row, column).
@@ -118,15 +112,8 @@ impl Matrix {
     #[inline]
     #[track_caller]
     pub fn set(&mut self, row: usize, col: usize, value: u32) {
-        assert!(
-            row < self.rows() && col < self.cols(),
-            "({row}, {col}) lies outside"
-        );
-        assert!(
-            value < self.field.order(),
-            "{value} is no element of {:?}",
-            self.field
-        );
+        assert!(row < self.rows() && col < self.cols(), "({row}, {col}) lies outside");
+        assert!(value < self.field.order(), "{value} is no element of {:?}", self.field);
         each!(&mut self.store, m => m.set(row, col, value));
     }
     /// One row as numbers.
@@ -147,15 +134,11 @@ impl Matrix {
     }
     /// The columns listed, in this order (repetition allowed).
     pub fn select_columns(&self, columns: &[usize]) -> Self {
-        Self::from_fn(&self.field, self.rows(), columns.len(), |i, j| {
-            self.get(i, columns[j])
-        })
+        Self::from_fn(&self.field, self.rows(), columns.len(), |i, j| self.get(i, columns[j]))
     }
     /// The rows listed, in this order (repetition allowed).
     pub fn select_rows(&self, rows: &[usize]) -> Self {
-        Self::from_fn(&self.field, rows.len(), self.cols(), |i, j| {
-            self.get(rows[i], j)
-        })
+        Self::from_fn(&self.field, rows.len(), self.cols(), |i, j| self.get(rows[i], j))
     }
     /// `self` above `other`.
     ///
@@ -167,11 +150,7 @@ impl Matrix {
         assert_eq!(self.cols(), other.cols(), "the numbers of columns differ");
         let top = self.rows();
         Self::from_fn(&self.field, top + other.rows(), self.cols(), |i, j| {
-            if i < top {
-                self.get(i, j)
-            } else {
-                other.get(i - top, j)
-            }
+            if i < top { self.get(i, j) } else { other.get(i - top, j) }
         })
     }
     /// `self` left of `other`.
@@ -184,11 +163,7 @@ impl Matrix {
         assert_eq!(self.rows(), other.rows(), "the numbers of rows differ");
         let left = self.cols();
         Self::from_fn(&self.field, self.rows(), left + other.cols(), |i, j| {
-            if j < left {
-                self.get(i, j)
-            } else {
-                other.get(i, j - left)
-            }
+            if j < left { self.get(i, j) } else { other.get(i, j - left) }
         })
     }
     /// The product self·other.
@@ -265,11 +240,7 @@ impl Matrix {
     /// Where `b` has not one entry a row.
     #[track_caller]
     pub fn solve(&self, b: &[u32]) -> Option<Vec<u32>> {
-        assert_eq!(
-            b.len(),
-            self.rows(),
-            "the right side must have one entry a row"
-        );
+        assert_eq!(b.len(), self.rows(), "the right side must have one entry a row");
         let column = Self::from_fn(&self.field, b.len(), 1, |i, _| b[i]);
         let mut joined = self.beside(&column);
         let pivots = joined.reduce();
@@ -334,20 +305,14 @@ mod tests {
 
     fn random(f: &Field, rows: usize, cols: usize, fill: f64, rng: &mut ChaCha8Rng) -> Matrix {
         Matrix::from_fn(f, rows, cols, |_, _| {
-            if rng.random_bool(fill) {
-                rng.random_range(0..f.order())
-            } else {
-                0
-            }
+            if rng.random_bool(fill) { rng.random_range(0..f.order()) } else { 0 }
         })
     }
 
     #[test]
     fn every_storage_agrees_with_plain_elimination() {
         let mut rng = ChaCha8Rng::seed_from_u64(7);
-        for q in [
-            2u64, 3, 4, 5, 7, 8, 9, 25, 27, 251, 257, 256, 6561, 65521, 65536,
-        ] {
+        for q in [2u64, 3, 4, 5, 7, 8, 9, 25, 27, 251, 257, 256, 6561, 65521, 65536] {
             let f = Field::new(q).unwrap();
             let shapes = [
                 (0, 0),
@@ -372,11 +337,7 @@ mod tests {
                     let mut plain = m.to_rows();
                     let expected = reference(&f, &mut plain, cols);
                     let mut reduced = m.clone();
-                    assert_eq!(
-                        reduced.reduce(),
-                        expected,
-                        "GF({q}), {rows} × {cols}, {fill}"
-                    );
+                    assert_eq!(reduced.reduce(), expected, "GF({q}), {rows} × {cols}, {fill}");
                     assert_eq!(reduced.to_rows(), plain, "GF({q}), {rows} × {cols}, {fill}");
                     assert_eq!(m.rank(), expected.len());
                     let kernel = m.null_space();
@@ -403,11 +364,7 @@ mod tests {
                 // Runs of empty columns move the pivots off the borders of words.
                 let gap = rng.random_range(0..90);
                 let m = Matrix::from_fn(&f, rows, cols, |_, j| {
-                    if (j / 50) % 2 == 0 || j < gap {
-                        0
-                    } else {
-                        rng.random_range(0..f.order())
-                    }
+                    if (j / 50) % 2 == 0 || j < gap { 0 } else { rng.random_range(0..f.order()) }
                 });
                 let mut plain = m.to_rows();
                 let expected = reference(&f, &mut plain, cols);

@@ -95,9 +95,7 @@ impl Ring {
         if x.iter().all(|&c| c == 0) || self.power(&x, order) != self.one() {
             return false;
         }
-        factorise(order)
-            .iter()
-            .all(|&(f, _)| self.power(&x, order / f) != self.one())
+        factorise(order).iter().all(|&(f, _)| self.power(&x, order / f) != self.one())
     }
 }
 
@@ -107,10 +105,8 @@ impl Ring {
 /// that is compatible with those of the subfields: for d | m the power
 /// x^{(p^m−1)/(p^d−1)} is a root of the polynomial of degree d.
 pub(super) fn conway(p: u64, m: u32) -> Vec<u64> {
-    let smaller: Vec<(u32, Vec<u64>)> = (1..m)
-        .filter(|d| m % d == 0)
-        .map(|d| (d, conway(p, d)))
-        .collect();
+    let smaller: Vec<(u32, Vec<u64>)> =
+        (1..m).filter(|d| m % d == 0).map(|d| (d, conway(p, d))).collect();
     let size = p.pow(m);
     for code in 0..size {
         // The most significant digit of `code` belongs to x^{m-1}.
@@ -119,11 +115,7 @@ pub(super) fn conway(p: u64, m: u32) -> Vec<u64> {
         for (i, c) in low.iter_mut().enumerate() {
             let digit = rest % p;
             rest /= p;
-            *c = if (m as usize - i) % 2 == 1 {
-                (p - digit) % p
-            } else {
-                digit
-            };
+            *c = if (m as usize - i) % 2 == 1 { (p - digit) % p } else { digit };
         }
         let ring = Ring { p, low };
         if !ring.x_is_primitive() {

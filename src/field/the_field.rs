@@ -57,10 +57,7 @@ impl Field {
             return Err(FieldError::TooLarge { order });
         }
         let (q, p) = (order as u32, p as u32);
-        let modulus: Vec<u32> = conway(u64::from(p), m)
-            .into_iter()
-            .map(|c| c as u32)
-            .collect();
+        let modulus: Vec<u32> = conway(u64::from(p), m).into_iter().map(|c| c as u32).collect();
         let mut exp = vec![0u16; 2 * (q as usize - 1)];
         let mut log = vec![0u16; q as usize];
         let top = p.pow(m - 1);
@@ -85,26 +82,14 @@ impl Field {
             }
             v = out;
         }
-        let mut field = Tables {
-            order: q,
-            prime: p,
-            degree: m,
-            modulus,
-            exp,
-            log,
-            zech: vec![],
-        };
+        let mut field = Tables { order: q, prime: p, degree: m, modulus, exp, log, zech: vec![] };
         if p != 2 && m > 1 {
             field.zech = (0..q - 1)
                 .map(|k| {
                     let v = u32::from(field.exp[k as usize]);
                     // 1 + v touches only the lowest digit.
                     let sum = if v % p == p - 1 { v - (p - 1) } else { v + 1 };
-                    if sum == 0 {
-                        NONE
-                    } else {
-                        u32::from(field.log[sum as usize])
-                    }
+                    if sum == 0 { NONE } else { u32::from(field.log[sum as usize]) }
                 })
                 .collect();
         }
@@ -149,11 +134,7 @@ impl Field {
             return a;
         }
         let (la, lb) = (u32::from(t.log[a as usize]), u32::from(t.log[b as usize]));
-        let (low, apart) = if lb >= la {
-            (la, lb - la)
-        } else {
-            (lb, la - lb)
-        };
+        let (low, apart) = if lb >= la { (la, lb - la) } else { (lb, la - lb) };
         match t.zech[apart as usize] {
             NONE => 0,
             z => u32::from(t.exp[(low + z) as usize]),
@@ -244,10 +225,7 @@ impl Field {
     }
     /// The element with these coefficients, x^0 first.
     pub fn from_digits(&self, digits: &[u32]) -> u32 {
-        digits
-            .iter()
-            .rev()
-            .fold(0, |v, &d| v * self.0.prime + d % self.0.prime)
+        digits.iter().rev().fold(0, |v, &d| v * self.0.prime + d % self.0.prime)
     }
     /// The m × m matrix of multiplication by a on coefficient columns: entry (i, j) is
     /// coefficient i of a·x^j.
@@ -306,9 +284,7 @@ mod tests {
 
     #[test]
     fn arithmetic_agrees_with_polynomials() {
-        for q in [
-            2, 3, 4, 5, 7, 8, 9, 16, 25, 27, 49, 64, 81, 101, 121, 125, 128, 243, 256,
-        ] {
+        for q in [2, 3, 4, 5, 7, 8, 9, 16, 25, 27, 49, 64, 81, 101, 121, 125, 128, 243, 256] {
             let f = Field::new(q).unwrap();
             for a in 0..q as u32 {
                 for b in 0..q as u32 {
@@ -342,9 +318,6 @@ mod tests {
         }
         assert_eq!(Field::new(6), Err(FieldError::NotPrimePower { order: 6 }));
         assert_eq!(Field::new(1), Err(FieldError::NotPrimePower { order: 1 }));
-        assert_eq!(
-            Field::new(1 << 17),
-            Err(FieldError::TooLarge { order: 1 << 17 })
-        );
+        assert_eq!(Field::new(1 << 17), Err(FieldError::TooLarge { order: 1 << 17 }));
     }
 }

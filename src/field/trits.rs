@@ -51,12 +51,7 @@ fn add_multiple(dst: &mut [u64], src: &[u64], c: u32) {
 impl Trits {
     pub(super) fn zeros(rows: usize, cols: usize) -> Self {
         let stride = 2 * cols.div_ceil(64);
-        Self {
-            rows,
-            cols,
-            stride,
-            data: vec![0; rows * stride],
-        }
+        Self { rows, cols, stride, data: vec![0; rows * stride] }
     }
     #[inline]
     pub(super) fn get(&self, r: usize, c: usize) -> u32 {
@@ -182,9 +177,8 @@ impl Trits {
             let at = r * stride + 2 * window;
             [data[at], data[at + 1]]
         };
-        let mut seen: Vec<[u64; 2]> = (first..self.rows)
-            .map(|r| look(&self.data, self.stride, r, window))
-            .collect();
+        let mut seen: Vec<[u64; 2]> =
+            (first..self.rows).map(|r| look(&self.data, self.stride, r, window)).collect();
         while *col < self.cols && pivots.len() < self.rows && pivots.len() - first < group {
             if *col / 64 != window {
                 if pivots.len() > first {
@@ -242,11 +236,7 @@ mod tests {
         for a in 0..3 {
             for b in 0..3 {
                 assert_eq!(sum(code[a], code[b]), code[(a + b) % 3], "{a} + {b}");
-                assert_eq!(
-                    difference(code[a], code[b]),
-                    code[(a + 3 - b) % 3],
-                    "{a} − {b}"
-                );
+                assert_eq!(difference(code[a], code[b]), code[(a + 3 - b) % 3], "{a} − {b}");
             }
         }
     }

@@ -12,11 +12,7 @@ pub(super) struct Words {
 
 impl Words {
     pub(super) fn zeros(rows: usize, cols: usize) -> Self {
-        Self {
-            rows,
-            cols,
-            data: vec![0; rows * cols],
-        }
+        Self { rows, cols, data: vec![0; rows * cols] }
     }
     pub(super) fn get(&self, r: usize, c: usize) -> u32 {
         u32::from(self.data[r * self.cols + c])

@@ -95,11 +95,7 @@ pub struct NetworkBuilder {
 impl NetworkBuilder {
     /// An empty network of this name.
     pub fn new(name: impl Into<String>) -> Self {
-        Self {
-            name: name.into(),
-            leg_starts: vec![0],
-            ..Self::default()
-        }
+        Self { name: name.into(), leg_starts: vec![0], ..Self::default() }
     }
     /// A new label. The caller keeps names distinct.
     pub fn label(&mut self, name: &str, dim: usize) -> Label {
@@ -172,11 +168,7 @@ impl NetworkBuilder {
     }
     fn label_name(&self, label: Label) -> &str {
         let l = label.index();
-        let start = if l == 0 {
-            0
-        } else {
-            self.label_ends[l - 1] as usize
-        };
+        let start = if l == 0 { 0 } else { self.label_ends[l - 1] as usize };
         &self.label_text[start..self.label_ends[l] as usize]
     }
     /// Checks the invariants of [`Network`].
@@ -202,11 +194,9 @@ impl NetworkBuilder {
             }
         }
         let mut listed: Vec<Option<&'static str>> = vec![None; labels];
-        for (list, members) in [
-            ("boundary", &self.boundary),
-            ("bulk", &self.bulk),
-            ("summed", &self.summed),
-        ] {
+        for (list, members) in
+            [("boundary", &self.boundary), ("bulk", &self.bulk), ("summed", &self.summed)]
+        {
             for &l in members {
                 if let Some(first) = listed[l.index()] {
                     return Err(NetworkError::ListedTwice {

@@ -50,16 +50,9 @@ impl Region {
         let n = network.boundary().len();
         let mut sites = vec![false; n];
         let mut bulk = Vec::new();
-        let past = |site: u64| RegionError::PastTheEnd {
-            region: text.into(),
-            site,
-            sites: n,
-        };
+        let past = |site: u64| RegionError::PastTheEnd { region: text.into(), site, sites: n };
         for part in text.split(',').map(str::trim).filter(|p| !p.is_empty()) {
-            let bad = || RegionError::Unreadable {
-                region: text.into(),
-                part: part.into(),
-            };
+            let bad = || RegionError::Unreadable { region: text.into(), part: part.into() };
             if let Some((a, b)) = part.split_once("..") {
                 let a: u64 = a.trim().parse().map_err(|_| bad())?;
                 let b: u64 = b.trim().parse().map_err(|_| bad())?;
@@ -109,10 +102,7 @@ impl Region {
         for k in 0..length.min(boundary) {
             sites[(start + k) % boundary] = true;
         }
-        Self {
-            sites,
-            bulk: Vec::new(),
-        }
+        Self { sites, bulk: Vec::new() }
     }
     /// One flag a boundary site.
     pub fn flags(&self) -> &[bool] {
@@ -132,10 +122,7 @@ impl Region {
     }
     /// The complement's boundary sites; bulk legs are not taken over.
     pub fn complement(&self) -> Self {
-        Self {
-            sites: self.sites.iter().map(|s| !s).collect(),
-            bulk: Vec::new(),
-        }
+        Self { sites: self.sites.iter().map(|s| !s).collect(), bulk: Vec::new() }
     }
     /// As the user would write it: maximal ranges from the lowest start on, one that wraps last.
     pub fn show(&self, network: &Network) -> String {

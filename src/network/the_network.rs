@@ -110,18 +110,12 @@ impl Network {
     /// A label's name.
     pub fn label_name(&self, label: Label) -> &str {
         let l = label.index();
-        let start = if l == 0 {
-            0
-        } else {
-            self.label_ends[l - 1] as usize
-        };
+        let start = if l == 0 { 0 } else { self.label_ends[l - 1] as usize };
         &self.label_text[start..self.label_ends[l] as usize]
     }
     /// The label of this name; looks through all names.
     pub fn find_label(&self, name: &str) -> Option<Label> {
-        (0..self.labels() as u32)
-            .map(Label::new)
-            .find(|&l| self.label_name(l) == name)
+        (0..self.labels() as u32).map(Label::new).find(|&l| self.label_name(l) == name)
     }
     /// Boundary legs in cyclic order, counter-clockwise.
     pub fn boundary(&self) -> &[Label] {
@@ -138,10 +132,7 @@ impl Network {
     /// The common dimension of the boundary legs, where they have one.
     pub fn boundary_dim(&self) -> Option<usize> {
         let first = self.dim(*self.boundary.first()?);
-        self.boundary
-            .iter()
-            .all(|&l| self.dim(l) == first)
-            .then_some(first)
+        self.boundary.iter().all(|&l| self.dim(l) == first).then_some(first)
     }
     /// Where it is drawn, where that is known.
     pub fn layout(&self) -> Option<&Layout> {

@@ -75,10 +75,7 @@ impl Lengths {
                 }
             }
             Curvature::Spherical => {
-                let (r, big) = (
-                    cos_r.clamp(-1.0, 1.0).acos(),
-                    cos_big.clamp(-1.0, 1.0).acos(),
-                );
+                let (r, big) = (cos_r.clamp(-1.0, 1.0).acos(), cos_big.clamp(-1.0, 1.0).acos());
                 Self {
                     curvature,
                     edge: 2.0 * cos_half.clamp(-1.0, 1.0).acos(),
@@ -109,28 +106,17 @@ pub struct Frame {
 impl Frame {
     /// Leaves everything in place.
     pub fn identity(curvature: Curvature) -> Self {
-        Self {
-            kappa: curvature.sign(),
-            a: Complex64::new(1.0, 0.0),
-            b: Complex64::new(0.0, 0.0),
-        }
+        Self { kappa: curvature.sign(), a: Complex64::new(1.0, 0.0), b: Complex64::new(0.0, 0.0) }
     }
     /// Turns about the origin, counter-clockwise, in radians.
     pub fn turn(curvature: Curvature, angle: f64) -> Self {
-        Self {
-            a: Complex64::from_polar(1.0, angle / 2.0),
-            ..Self::identity(curvature)
-        }
+        Self { a: Complex64::from_polar(1.0, angle / 2.0), ..Self::identity(curvature) }
     }
     /// Takes the origin to the drawn point (t, 0) along the first axis.
     pub fn shift(curvature: Curvature, t: f64) -> Self {
         let kappa = curvature.sign();
         let a = 1.0 / (1.0 + kappa * t * t).sqrt();
-        Self {
-            kappa,
-            a: Complex64::new(a, 0.0),
-            b: Complex64::new(a * t, 0.0),
-        }
+        Self { kappa, a: Complex64::new(a, 0.0), b: Complex64::new(a * t, 0.0) }
     }
     /// First `inner`, then this.
     pub fn after(&self, inner: &Self) -> Self {
@@ -140,19 +126,11 @@ impl Frame {
         let size = (a.norm_sqr() + k * b.norm_sqr()).abs();
         // Far out in the disk the difference drowns in rounding; there the last sizes stand.
         let scale = if size > 1e-6 { 1.0 / size.sqrt() } else { 1.0 };
-        Self {
-            kappa: k,
-            a: a * scale,
-            b: b * scale,
-        }
+        Self { kappa: k, a: a * scale, b: b * scale }
     }
     /// Undoes it.
     pub fn inverse(&self) -> Self {
-        Self {
-            kappa: self.kappa,
-            a: self.a.conj(),
-            b: -self.b,
-        }
+        Self { kappa: self.kappa, a: self.a.conj(), b: -self.b }
     }
     /// Where a point goes.
     pub fn apply(&self, point: [f64; 2]) -> [f64; 2] {
@@ -215,9 +193,7 @@ pub fn frames(patch: &Patch) -> Option<Vec<Frame>> {
     let mut frames = Vec::with_capacity(patch.tiles());
     frames.push(first_frame(tiling, patch.is_centred_at_vertex()));
     for tile in 1..patch.tiles() {
-        let parent = patch
-            .glued(tile * p as usize)
-            .expect("side 0 lies on an earlier tile");
+        let parent = patch.glued(tile * p as usize).expect("side 0 lies on an earlier tile");
         let from: &Frame = &frames[parent / p as usize];
         frames.push(from.after(&steps[parent % p as usize]));
     }

@@ -117,9 +117,7 @@ fn foreseen(sizes: &[u64], rings: u32) -> f64 {
         return 0.0;
     }
     let left = (rings as usize - r) as f64;
-    let ratio = (r - 2..=r)
-        .map(|k| sizes[k] as f64 / sizes[k - 1] as f64)
-        .fold(f64::MAX, f64::min);
+    let ratio = (r - 2..=r).map(|k| sizes[k] as f64 / sizes[k - 1] as f64).fold(f64::MAX, f64::min);
     let last = sizes[r] as f64;
     if ratio > 1.3 {
         (last.ln() + left * ratio.ln()).exp()
@@ -159,11 +157,7 @@ impl<'a> Rim<'a> {
             limit,
             around: growth.around,
             sides: p,
-            rings: vec![Ring {
-                first_tile: 0,
-                first_side: 0,
-                sides: p,
-            }],
+            rings: vec![Ring { first_tile: 0, first_side: 0, sides: p }],
             tiles: 1,
             glue: vec![OPEN; p as usize],
             next: (0..p).map(|s| (s + 1) % p).collect(),
@@ -183,11 +177,7 @@ impl<'a> Rim<'a> {
 
     fn begin_ring(&mut self, sides: u32) {
         self.sides = sides;
-        self.rings.push(Ring {
-            first_tile: self.tiles,
-            first_side: self.glue.len() as u32,
-            sides,
-        });
+        self.rings.push(Ring { first_tile: self.tiles, first_side: self.glue.len() as u32, sides });
     }
 
     fn ring_by_vertices(&mut self) -> Result<(), TilingError> {
@@ -247,8 +237,7 @@ impl<'a> Rim<'a> {
         self.glue[on as usize] = base;
         self.glue.resize((base + p) as usize, OPEN);
         self.next.extend((base..base + p).map(|s| s + 1));
-        self.prev
-            .extend((base..base + p).map(|s| s.wrapping_sub(1)));
+        self.prev.extend((base..base + p).map(|s| s.wrapping_sub(1)));
         self.start.push(0);
         self.start.push(self.start[on as usize] + 1);
         self.start.resize((base + p) as usize, 1);
@@ -341,10 +330,6 @@ impl<'a> Rim<'a> {
     }
 
     fn misfit(&self) -> TilingError {
-        Patch::misfit(
-            &self.growth.polygons,
-            self.around,
-            self.rings.len() as u32 - 1,
-        )
+        Patch::misfit(&self.growth.polygons, self.around, self.rings.len() as u32 - 1)
     }
 }

@@ -60,9 +60,7 @@ impl Patch {
             .collect()
     }
     fn ring_end(&self, ring: usize) -> u32 {
-        self.rings
-            .get(ring + 1)
-            .map_or(self.tiles, |r| r.first_tile)
+        self.rings.get(ring + 1).map_or(self.tiles, |r| r.first_tile)
     }
     /// The ring of a tile.
     pub fn ring_of(&self, tile: u32) -> u32 {
@@ -91,10 +89,7 @@ impl Patch {
         let number = number as u32;
         let ring = self.rings[self.rings.partition_point(|r| r.first_side <= number) - 1];
         let within = number - ring.first_side;
-        Side {
-            tile: ring.first_tile + within / ring.sides,
-            side: within % ring.sides,
-        }
+        Side { tile: ring.first_tile + within / ring.sides, side: within % ring.sides }
     }
     /// What a side is glued to, by number; nothing where it is open.
     pub fn glued(&self, number: usize) -> Option<usize> {
@@ -148,9 +143,6 @@ impl Patch {
         format!("{{{},{around}}}", list.join("/"))
     }
     pub(super) fn misfit(polygons: &[u32], around: u32, ring: u32) -> TilingError {
-        TilingError::Misfit {
-            tiling: Self::describe(polygons, around),
-            ring,
-        }
+        TilingError::Misfit { tiling: Self::describe(polygons, around), ring }
     }
 }

@@ -109,21 +109,12 @@ impl Tiling {
     pub fn new(polygon: u64, around: u64) -> Result<Self, TilingError> {
         let fits = |n: u64| (3..=u64::from(Self::MOST)).contains(&n);
         if !fits(polygon) {
-            return Err(TilingError::Polygon {
-                sides: polygon,
-                most: Self::MOST,
-            });
+            return Err(TilingError::Polygon { sides: polygon, most: Self::MOST });
         }
         if !fits(around) {
-            return Err(TilingError::Around {
-                around,
-                most: Self::MOST,
-            });
+            return Err(TilingError::Around { around, most: Self::MOST });
         }
-        Ok(Self {
-            polygon: polygon as u32,
-            around: around as u32,
-        })
+        Ok(Self { polygon: polygon as u32, around: around as u32 })
     }
     /// Sides of a tile, p.
     pub const fn polygon(self) -> u32 {
@@ -146,11 +137,7 @@ impl Tiling {
     /// λ + 1/λ = (p−2)(q−2) − 2, the larger root. 1 elsewhere.
     pub fn growth_rate(self) -> f64 {
         let trace = (f64::from(self.polygon) - 2.0) * (f64::from(self.around) - 2.0) - 2.0;
-        if trace <= 2.0 {
-            1.0
-        } else {
-            (trace + (trace * trace - 4.0).sqrt()) / 2.0
-        }
+        if trace <= 2.0 { 1.0 } else { (trace + (trace * trace - 4.0).sqrt()) / 2.0 }
     }
     /// Tiles of the whole sphere, 4q/(4 − (p−2)(q−2)); nothing for infinite tilings.
     pub fn sphere(self) -> Option<u32> {
