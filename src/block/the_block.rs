@@ -1,10 +1,12 @@
 //! One building block.
 
-use super::{Entries, IsometryTable, Stabilizer};
+use super::{Entries, Exact, IsometryTable, Stabilizer};
+use crate::tensor::Dense;
 use std::fmt;
 use std::sync::{Arc, OnceLock};
 
 type Maker = Arc<dyn Fn() -> Entries + Send + Sync>;
+type ExactMaker = Arc<dyn Fn() -> Exact + Send + Sync>;
 
 /// A tensor with what is known about it. Its numbers are made when first asked for, so that
 /// questions which geometry or a finite field answers never build them.
@@ -14,7 +16,9 @@ pub struct Block {
     dims: Vec<usize>,
     isometries: IsometryTable,
     stabilizer: Option<Stabilizer>,
+    nonzeros: Option<u128>,
     make: Maker,
+    make_exact: Option<ExactMaker>,
     entries: Arc<OnceLock<Entries>>,
 }
 
@@ -33,9 +37,58 @@ impl Block {
             dims,
             isometries,
             stabilizer,
+            nonzeros: None,
             make: Arc::new(make),
+            make_exact: None,
             entries: Arc::default(),
         }
+    }
+    /// A block whose `nonzeros` entries are known without rounding. The caller vouches as in
+    /// [`Self::lazy`].
+    pub fn exact_lazy(
+        name: impl Into<String>,
+        dims: Vec<usize>,
+        isometries: IsometryTable,
+        stabilizer: Option<Stabilizer>,
+        nonzeros: u128,
+        make: impl Fn() -> Exact + Send + Sync + 'static,
+    ) -> Self {
+        let make: ExactMaker = Arc::new(make);
+        let exact = make.clone();
+        let total = dims.iter().fold(1u128, |s, &d| s.saturating_mul(d as u128));
+        let floating = move || {
+            let sparse = Entries::Sparse(exact().to_sparse());
+            if nonzeros.saturating_mul(2) > total {
+                Entries::Dense(sparse.to_dense())
+            } else {
+                sparse
+            }
+        };
+        let mut block = Self::lazy(name, dims, isometries, stabilizer, floating);
+        block.nonzeros = Some(nonzeros);
+        block.make_exact = Some(make);
+        block
+    }
+    /// A block whose numbers are at hand. The caller vouches as in [`Self::lazy`].
+    pub fn ready(
+        name: impl Into<String>,
+        isometries: IsometryTable,
+        stabilizer: Option<Stabilizer>,
+        entries: Entries,
+    ) -> Self {
+        let dims = entries.dims().to_vec();
+        let mut block = Self::lazy(name, dims, isometries, stabilizer, || {
+            unreachable!("the entries were set when the block was made")
+        });
+        block.nonzeros = Some(u128::from(entries.nonzeros()));
+        block.entries = Arc::new(OnceLock::from(entries));
+        block
+    }
+    /// The same block under another name.
+    #[must_use]
+    pub fn named(mut self, name: impl Into<String>) -> Self {
+        self.name = name.into();
+        self
     }
     /// What the block is, in words fit for a table: `four-leg`, `array t0.npy`.
     pub fn name(&self) -> &str {
@@ -54,8 +107,24 @@ impl Block {
         self.stabilizer.as_ref()
     }
     /// Its numbers; made at the first call and kept.
+    ///
+    /// Some blocks have more entries than any memory holds ([`Self::nonzeros`] tells without
+    /// making them); ask there first.
     pub fn entries(&self) -> &Entries {
         self.entries.get_or_init(|| (self.make)())
+    }
+    /// Number of non-zero entries. Known beforehand for the built-in blocks; for other ones
+    /// the entries are made and counted.
+    pub fn nonzeros(&self) -> u128 {
+        self.nonzeros.unwrap_or_else(|| u128::from(self.entries().nonzeros()))
+    }
+    /// Its entries without rounding, where they are known so; made anew at every call.
+    pub fn exact(&self) -> Option<Exact> {
+        self.make_exact.as_ref().map(|make| make())
+    }
+    /// All entries as an array.
+    pub fn to_dense(&self) -> Dense {
+        self.entries().to_dense()
     }
 }
 

@@ -106,7 +106,7 @@ impl Ring {
 /// x^{(p^m−1)/(p^d−1)} is a root of the polynomial of degree d.
 pub(super) fn conway(p: u64, m: u32) -> Vec<u64> {
     let smaller: Vec<(u32, Vec<u64>)> =
-        (1..m).filter(|d| m % d == 0).map(|d| (d, conway(p, d))).collect();
+        (1..m).filter(|d| m.is_multiple_of(*d)).map(|d| (d, conway(p, d))).collect();
     let size = p.pow(m);
     for code in 0..size {
         // The most significant digit of `code` belongs to x^{m-1}.
