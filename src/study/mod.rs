@@ -1,1 +1,2 @@
 //! The whole job from one file.
+pub mod picture;
