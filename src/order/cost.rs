@@ -71,15 +71,28 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
             .filter(|&s| s < 1 << 127)
             .ok_or(OrderError::TooManySlices)?;
     }
-    let (mut live, mut left) = leaves(shape, &sliced);
-    let elements =
+    let Leaves { sets, lone, mut left } = Leaves::of(shape, &sliced);
+    let product =
         |set: &[u32]| set.iter().fold(Magnitude::ONE, |m, &l| m.times(shape.sizes[l as usize]));
+    // A lone label stays on whatever its tensor becomes part of: only count and size matter.
+    let mut live: Vec<Option<Live>> = sets
+        .into_iter()
+        .zip(lone)
+        .map(|(set, lone)| {
+            let lone_size = product(&lone);
+            Some(Live {
+                elements: lone_size.product(product(&set)),
+                set,
+                lone_size,
+                lone: lone.len(),
+            })
+        })
+        .collect();
     let mut alive = Magnitude::ZERO;
     let mut largest = Magnitude::ZERO;
     for leaf in live.iter().flatten() {
-        let e = elements(leaf);
-        alive = alive.plus(e);
-        largest = largest.max(e);
+        alive = alive.plus(leaf.elements);
+        largest = largest.max(leaf.elements);
     }
     let (mut peak, mut adds, mut written, mut widest) =
         (alive, Magnitude::ZERO, Magnitude::ZERO, 0);
@@ -91,17 +104,19 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
                 .ok_or(OrderError::StepTensor { step, tensor: t })
         };
         let (x, y) = (take(a)?, take(b)?);
-        merge(&x, &y, &mut union);
-        widest = widest.max(union.len());
-        adds = adds.plus(elements(&union));
-        let result = keep(&x, &y, &union, &mut left);
-        let made = elements(&result);
-        written = written.plus(made);
-        largest = largest.max(made);
-        alive = alive.plus(made);
+        merge(&x.set, &y.set, &mut union);
+        let lone = x.lone + y.lone;
+        let lone_size = x.lone_size.product(y.lone_size);
+        widest = widest.max(union.len() + lone);
+        adds = adds.plus(product(&union).product(lone_size));
+        let set = keep(&x.set, &y.set, &union, &mut left);
+        let elements = product(&set).product(lone_size);
+        written = written.plus(elements);
+        largest = largest.max(elements);
+        alive = alive.plus(elements);
         peak = peak.max(alive);
-        alive = alive.minus(elements(&x)).minus(elements(&y));
-        live.push(Some(result));
+        alive = alive.minus(x.elements).minus(y.elements);
+        live.push(Some(Live { set, lone, lone_size, elements }));
     }
     let adds = adds.times_count(slices);
     Ok(Cost {
@@ -116,29 +131,61 @@ pub fn cost(shape: &Shape, plan: &Plan) -> Result<Cost, OrderError> {
     })
 }
 
-/// The leaf form of every tensor (sorted labels), and for each label by how many live
-/// tensors it is held, open counting as one more.
-pub(super) fn leaves(shape: &Shape, sliced: &[bool]) -> (Vec<Option<Vec<u32>>>, Vec<u32>) {
-    let mut left = vec![0u32; shape.sizes.len()];
-    let mut sets: Vec<Vec<u32>> = shape
-        .tensors
-        .iter()
-        .map(|labels| {
-            let mut set: Vec<u32> =
-                labels.iter().filter(|l| !sliced[l.index()]).map(|l| l.number()).collect();
-            set.sort_unstable();
-            set.dedup();
-            set.iter().for_each(|&l| left[l as usize] += 1);
-            set
-        })
-        .collect();
-    for l in &shape.open {
-        left[l.index()] += 1;
+/// A tensor during pricing: shared labels one by one, lone open ones by count and size.
+struct Live {
+    set: Vec<u32>,
+    lone: usize,
+    lone_size: Magnitude,
+    elements: Magnitude,
+}
+
+/// Every tensor in leaf form.
+pub(super) struct Leaves {
+    /// The labels of each tensor that other tensors hold too, sorted.
+    pub sets: Vec<Vec<u32>>,
+    /// The open labels that each tensor holds alone, sorted.
+    pub lone: Vec<Vec<u32>>,
+    /// For each label by how many live tensors it is held, open counting as one more.
+    pub left: Vec<u32>,
+}
+
+impl Leaves {
+    /// The leaf form where these labels are gone.
+    pub fn of(shape: &Shape, gone: &[bool]) -> Self {
+        let mut left = vec![0u32; shape.sizes.len()];
+        let mut sets: Vec<Vec<u32>> = shape
+            .tensors
+            .iter()
+            .map(|labels| {
+                let mut set: Vec<u32> =
+                    labels.iter().filter(|l| !gone[l.index()]).map(|l| l.number()).collect();
+                set.sort_unstable();
+                set.dedup();
+                set.iter().for_each(|&l| left[l as usize] += 1);
+                set
+            })
+            .collect();
+        let mut open = vec![false; shape.sizes.len()];
+        for l in &shape.open {
+            open[l.index()] = true;
+        }
+        let lone = sets
+            .iter_mut()
+            .map(|set| {
+                let lone = set
+                    .iter()
+                    .copied()
+                    .filter(|&l| left[l as usize] == 1 && open[l as usize])
+                    .collect();
+                set.retain(|&l| left[l as usize] > 1);
+                lone
+            })
+            .collect();
+        for (l, &open) in left.iter_mut().zip(&open) {
+            *l += u32::from(open);
+        }
+        Self { sets, lone, left }
     }
-    for set in &mut sets {
-        set.retain(|&l| left[l as usize] > 1);
-    }
-    (sets.into_iter().map(Some).collect(), left)
 }
 
 /// Union of two sorted lists.

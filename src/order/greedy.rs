@@ -79,6 +79,7 @@ struct State<'a> {
     rng: ChaCha8Rng,
     live: Vec<Option<Vec<u32>>>,
     sizes: Vec<f64>,
+    lone: Vec<f64>,
     left: Vec<u32>,
     holders: Vec<Vec<u32>>,
     queue: BinaryHeap<Reverse<(Figure, u32, u32)>>,
@@ -87,13 +88,15 @@ struct State<'a> {
 
 /// A greedy order by this rule; the seed matters where the rule has noise.
 pub(crate) fn order(net: &Net, rule: Rule, seed: u64) -> Steps {
-    let sizes = net.tensors.iter().map(|t| net.size(t)).collect();
+    let sizes = net.tensors.iter().zip(&net.lone).map(|(t, lone)| net.size(t) + lone).collect();
+
     let mut s = State {
         net,
         rule,
         rng: ChaCha8Rng::seed_from_u64(seed),
         live: net.tensors.iter().cloned().map(Some).collect(),
         sizes,
+        lone: net.lone.clone(),
         left: net.counts(),
         holders: net.holders(),
         queue: BinaryHeap::new(),
@@ -192,7 +195,9 @@ impl State<'_> {
         for &l in &result {
             self.holders[l as usize].push(c);
         }
-        self.sizes.push(self.net.size(&result));
+        let lone = self.lone[a as usize] + self.lone[b as usize];
+        self.lone.push(lone);
+        self.sizes.push(self.net.size(&result) + lone);
         self.live.push(Some(result));
         self.steps.push((a, b));
         c

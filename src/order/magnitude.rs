@@ -44,6 +44,18 @@ impl Magnitude {
         }
         .tidy()
     }
+    /// The product.
+    pub fn product(self, other: Self) -> Self {
+        Self {
+            exact: match (self.exact, other.exact) {
+                (Some(a), Some(b)) => a.checked_mul(b),
+                _ => None,
+            },
+            mantissa: self.mantissa * other.mantissa,
+            exponent: self.exponent + other.exponent,
+        }
+        .tidy()
+    }
     fn scaled(self, exponent: i64) -> f64 {
         let gap = self.exponent - exponent;
         if gap < -1000 { 0.0 } else { self.mantissa * 2f64.powi(gap as i32) }

@@ -1,18 +1,29 @@
 //! Contraction orders: shapes, plans, what they cost and how to find good ones.
 
+mod anneal;
 mod cost;
+mod elimination;
 mod error;
+mod exhaustive;
 mod file;
+mod graph;
 mod greedy;
+mod lower;
 mod magnitude;
 mod net;
+mod parts;
 mod plan;
+mod portfolio;
+mod price;
 mod search;
 mod shape;
+mod subsets;
+mod tree;
+mod windows;
 
 pub use cost::{Cost, cost};
 pub use error::OrderError;
 pub use file::{load, save};
 pub use plan::Plan;
-pub use search::{Found, Objective, Request, search};
+pub use search::{Found, Method, Objective, Request, search};
 pub use shape::Shape;
