@@ -19,6 +19,7 @@ pub mod cut;
 mod flow;
 mod solve;
 mod spectrum;
+pub mod stabilizer;
 mod the_core;
 mod wires;
 
