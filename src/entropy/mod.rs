@@ -19,7 +19,6 @@ pub mod cut;
 mod flow;
 mod solve;
 mod spectrum;
-pub mod stabilizer;
 mod the_core;
 mod wires;
 

@@ -1,6 +1,6 @@
 //! Puts a network together and checks it.
 
-use super::{Layout, Network, TensorId};
+use super::{BlockSource, Layout, Network, TensorId};
 use crate::block::Block;
 use crate::tensor::Label;
 use std::collections::HashMap;
@@ -83,6 +83,7 @@ pub struct NetworkBuilder {
     leg_starts: Vec<u32>,
     legs: Vec<Label>,
     blocks: Vec<Arc<Block>>,
+    sources: Vec<Option<BlockSource>>,
     known: HashMap<usize, u32>,
     block_of: Vec<u32>,
     tensor_names: Vec<Option<Box<str>>>,
@@ -136,11 +137,7 @@ impl NetworkBuilder {
         }
         self.legs.extend_from_slice(legs);
         self.leg_starts.push(self.legs.len() as u32);
-        let key = Arc::as_ptr(block) as usize;
-        let number = *self.known.entry(key).or_insert_with(|| {
-            self.blocks.push(Arc::clone(block));
-            self.blocks.len() as u32 - 1
-        });
+        let number = self.block_number(block);
         self.block_of.push(number);
         if name.is_some() && self.tensor_names.is_empty() {
             self.tensor_names.resize(id.index(), None);
@@ -149,6 +146,27 @@ impl NetworkBuilder {
             self.tensor_names.push(name.map(Into::into));
         }
         Ok(id)
+    }
+    fn block_number(&mut self, block: &Arc<Block>) -> u32 {
+        let key = Arc::as_ptr(block) as usize;
+        *self.known.entry(key).or_insert_with(|| {
+            self.blocks.push(Arc::clone(block));
+            self.sources.push(None);
+            self.blocks.len() as u32 - 1
+        })
+    }
+    /// Notes how a block is written in a file. A block without a note is written as numbers.
+    pub fn source(&mut self, block: &Arc<Block>, source: BlockSource) {
+        let number = self.block_number(block);
+        self.sources[number as usize] = Some(source);
+    }
+    /// Tensors so far.
+    pub fn tensors(&self) -> usize {
+        self.block_of.len()
+    }
+    /// Dimension of a label issued by this builder.
+    pub fn dim(&self, label: Label) -> usize {
+        self.dims[label.index()] as usize
     }
     /// Boundary legs, in cyclic order, counter-clockwise.
     pub fn boundary(&mut self, labels: impl IntoIterator<Item = Label>) {
@@ -236,6 +254,7 @@ impl NetworkBuilder {
             holder_starts: starts,
             holders,
             blocks: self.blocks,
+            sources: self.sources,
             block_of: self.block_of,
             tensor_names: self.tensor_names,
             boundary: self.boundary,

@@ -1,11 +1,25 @@
 //! Networks: which tensors there are, which legs they share, which legs are left open.
+//!
+//! [`NetworkBuilder`] puts one together in code, [`load`] reads a file, a [`Recipe`] makes one
+//! of a known family; all give a checked [`Network`]. [`save`] writes it.
 
 mod build;
+mod file;
+mod frames;
 mod ids;
+mod intern;
+mod limits;
+mod recipe;
 mod region;
+mod source;
 mod the_network;
 
 pub use build::{NetworkBuilder, NetworkError};
+pub use file::{FileError, Format, Problem, from_toml, load, load_with, nearest, save, to_bytes};
+pub use frames::tile_frames;
 pub use ids::{BoundarySite, TensorId};
+pub use limits::{Limits, Overrides};
+pub use recipe::{Recipe, Selection, TileRule, TilingRecipe, Turns};
 pub use region::{Region, RegionError};
+pub use source::{BlockSource, NamedBlock};
 pub use the_network::{Layout, Network};

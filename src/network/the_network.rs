@@ -1,6 +1,6 @@
 //! A checked network.
 
-use super::TensorId;
+use super::{BlockSource, TensorId};
 use crate::block::Block;
 use crate::tensor::Label;
 use std::sync::Arc;
@@ -22,6 +22,7 @@ pub struct Network {
     pub(super) holder_starts: Vec<u32>,
     pub(super) holders: Vec<TensorId>,
     pub(super) blocks: Vec<Arc<Block>>,
+    pub(super) sources: Vec<Option<BlockSource>>,
     pub(super) block_of: Vec<u32>,
     pub(super) tensor_names: Vec<Option<Box<str>>>,
     pub(super) boundary: Vec<Label>,
@@ -34,12 +35,39 @@ pub struct Network {
 #[derive(Debug, Clone, PartialEq, Default)]
 #[non_exhaustive]
 pub struct Layout {
-    /// Ring of each tensor, for networks grown by rings; else empty.
+    /// Ring of each tensor, for networks grown by rings; else empty. Tensors past its end (the
+    /// states that fix bulk legs) belong to no ring.
     pub ring: Vec<u32>,
     /// p and q of the tiling {p,q}, where it is one.
     pub tiling: Option<(u32, u32)>,
     /// Place of each tensor in the plane (the unit disk for hyperbolic tilings); else empty.
+    /// A tiling without holes leaves it empty, too: [`crate::network::tile_frames`] finds the
+    /// places from the bonds.
     pub place: Vec<[f64; 2]>,
+    /// Direction, in radians, in which each tensor's leg 0 leaves a tile; empty where `place`
+    /// is, or where directions mean nothing.
+    pub angle: Vec<f64>,
+    /// Which of several glued patches each tensor belongs to; empty where there is one patch.
+    pub sheet: Vec<u32>,
+    /// Lengths of the boundary's cycles, in the order of sites: the outer boundary first, then
+    /// the rims of holes. Empty where it is not known to be a union of cycles.
+    pub cycles: Vec<u32>,
+}
+
+impl Layout {
+    /// Tensors in each ring.
+    pub fn ring_sizes(&self) -> Vec<usize> {
+        let rings = self.ring.iter().max().map_or(0, |&r| r as usize + 1);
+        let mut sizes = vec![0; rings];
+        for &r in &self.ring {
+            sizes[r as usize] += 1;
+        }
+        sizes
+    }
+    /// The patch to which a tensor belongs.
+    pub fn sheet_of(&self, tensor: TensorId) -> u32 {
+        self.sheet.get(tensor.index()).copied().unwrap_or(0)
+    }
 }
 
 impl Network {
@@ -87,6 +115,10 @@ impl Network {
     pub fn blocks(&self) -> &[Arc<Block>] {
         &self.blocks
     }
+    /// How each of [`Self::blocks`] is written in a file, where that is known.
+    pub fn sources(&self) -> &[Option<BlockSource>] {
+        &self.sources
+    }
     /// Which of [`Self::blocks`] a tensor is.
     pub fn block_number(&self, tensor: TensorId) -> usize {
         self.block_of[tensor.index()] as usize
@@ -97,6 +129,10 @@ impl Network {
             Some(Some(name)) => name.to_string(),
             _ => format!("t{}", tensor.index()),
         }
+    }
+    /// The name that a tensor was given, where it was given one.
+    pub fn given_name(&self, tensor: TensorId) -> Option<&str> {
+        self.tensor_names.get(tensor.index())?.as_deref()
     }
     /// Dimension of a label.
     pub fn dim(&self, label: Label) -> usize {

@@ -132,6 +132,17 @@ impl Frame {
     pub fn inverse(&self) -> Self {
         Self { kappa: self.kappa, a: self.a.conj(), b: -self.b }
     }
+    /// Takes the origin to a place and turns what points along the first axis by `angle`.
+    pub fn at(curvature: Curvature, place: [f64; 2], angle: f64) -> Self {
+        let (t, towards) = (place[0].hypot(place[1]), place[1].atan2(place[0]));
+        Self::turn(curvature, towards)
+            .after(&Self::shift(curvature, t))
+            .after(&Self::turn(curvature, angle - towards))
+    }
+    /// The angle by which what points along the first axis at the origin is turned.
+    pub fn angle(&self) -> f64 {
+        2.0 * self.a.arg()
+    }
     /// Where a point goes.
     pub fn apply(&self, point: [f64; 2]) -> [f64; 2] {
         let z = Complex64::new(point[0], point[1]);
@@ -150,7 +161,7 @@ impl Frame {
 }
 
 /// Direction in which the middle of a side is seen from the middle of an unmoved tile.
-fn side_angle(sides: u32, side: u32) -> f64 {
+pub fn side_angle(sides: u32, side: u32) -> f64 {
     2.0 * PI * f64::from(side) / f64::from(sides)
 }
 

@@ -1,0 +1,18 @@
+//! Network files: TOML or JSON, one schema.
+//!
+//! [`load`] reads a file of either kind, expanding a recipe where it holds one; [`save`]
+//! writes the explicit network. [`from_toml`] takes the same keys out of a larger file.
+
+mod blocks;
+mod keys;
+mod problem;
+mod raw;
+mod read;
+mod write;
+
+pub(in crate::network) use blocks::BlockShelf;
+pub use keys::nearest;
+pub(in crate::network) use keys::{check_keys, whole, word};
+pub use problem::{FileError, Problem};
+pub use read::{from_toml, load, load_with};
+pub use write::{Format, save, to_bytes};
