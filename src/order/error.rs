@@ -118,13 +118,11 @@ pub enum OrderError {
     },
     /// The exhaustive method on too many tensors.
     #[error(
-        "the exhaustive method would need more than {limit} partial results on these {tensors} tensors; take another method"
+        "weighing every order of these {tensors} connected tensors takes more work than was given, or sizes too large for it; take another method"
     )]
     TooWide {
-        /// Tensors left after reductions.
+        /// Tensors of the part.
         tensors: usize,
-        /// Partial results allowed.
-        limit: usize,
     },
     /// The memory cannot hold even a fully sliced plan.
     #[error(

@@ -20,16 +20,11 @@ pub(crate) const DENSE: usize = 20;
 /// Most tensors that the sparse way numbers.
 pub(crate) const SPARSE: usize = 64;
 
-/// An order proven best.
-#[derive(Debug, Clone, PartialEq)]
-pub(crate) struct Optimum {
-    pub steps: Steps,
-    /// Whether orders with outer products were weighed too.
-    pub outer_products: bool,
-}
+/// Most sets that the sparse way settles.
+const SETS: usize = 2_000_000;
 
 /// The labels of a small net with the tensors that hold them.
-pub(crate) fn held(net: &Net) -> Vec<Held> {
+fn held(net: &Net) -> Vec<Held> {
     let mut labels: Vec<Held> = net
         .holders()
         .into_iter()
@@ -51,13 +46,12 @@ pub(crate) fn held(net: &Net) -> Vec<Held> {
 
 /// The best order of all; `cap` is log2 of the price of a known one. `None` where the net
 /// is too large or sizes leave the range of a double.
-pub(crate) fn dense(net: &Net, aim: Aim, cap: f64) -> Option<Optimum> {
+pub(crate) fn dense(net: &Net, aim: Aim, cap: f64) -> Option<Steps> {
     let k = net.tensors.len();
     if k > DENSE {
         return None;
     }
-    let (steps, _) = subsets::best(k, &held(net), aim, cap)?;
-    Some(Optimum { steps, outer_products: true })
+    subsets::best(k, &held(net), aim, cap).map(|(steps, _)| steps)
 }
 
 struct Set {
@@ -70,16 +64,16 @@ struct Set {
 }
 
 /// The best order without outer products of a connected net, at most [`SPARSE`] tensors;
-/// `cap` is log2 of the price of a known one. `None` where more than `limit` sets or
+/// `cap` is log2 of the price of a known one. `None` where more than [`SETS`] sets or
 /// `work` pairs would be needed, or the watch asks to stop.
 pub(crate) fn sparse(
     net: &Net,
     price: Price,
     cap: f64,
-    limit: usize,
-    work: &mut u64,
+    work: u64,
     watch: &dyn Watch,
-) -> Option<Optimum> {
+) -> Option<Steps> {
+    let mut work = work;
     let k = net.tensors.len();
     let all_bits: f64 = net.bits.iter().sum::<f64>() + net.lone.iter().sum::<f64>();
     if k > SPARSE || all_bits * price.steps.max(price.results) > 900.0 {
@@ -114,9 +108,9 @@ pub(crate) fn sparse(
         set.settled = true;
         settled += 1;
         if s == full {
-            return Some(Optimum { steps: unfold(k, full, &sets), outer_products: false });
+            return Some(unfold(k, full, &sets));
         }
-        if settled > limit || (settled % 64 == 0 && watch.stop()) {
+        if settled > SETS || (settled % 64 == 0 && watch.stop()) {
             return None;
         }
         let (cost, near, touch, inner) = (set.best, set.near, set.touch, set.inner);
@@ -126,7 +120,7 @@ pub(crate) fn sparse(
             let v = todo.trailing_zeros();
             todo &= todo - 1;
             for &t in &holding[v as usize] {
-                *work = work.saturating_sub(1);
+                work = work.saturating_sub(1);
                 if t & s != 0 || t & seen_before != 0 {
                     continue;
                 }
@@ -190,7 +184,7 @@ pub(crate) fn sparse(
                     queue.push(Reverse((order_of(total), union)));
                 }
             }
-            if *work == 0 {
+            if work == 0 {
                 return None;
             }
             seen_before |= 1 << v;

@@ -20,10 +20,6 @@ impl Graph {
     pub fn row(&self, v: usize) -> &[u64] {
         &self.rows[v * self.words..(v + 1) * self.words]
     }
-    /// Whether u and v are joined.
-    pub fn joined(&self, u: usize, v: usize) -> bool {
-        self.rows[u * self.words + v / 64] >> (v % 64) & 1 == 1
-    }
     /// Joins u and v (u ≠ v).
     pub fn join(&mut self, u: usize, v: usize) {
         self.rows[u * self.words + v / 64] |= 1 << (v % 64);

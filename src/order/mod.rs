@@ -1,6 +1,7 @@
 //! Contraction orders: shapes, plans, what they cost and how to find good ones.
 
 mod anneal;
+mod bisection;
 mod cost;
 mod elimination;
 mod error;
@@ -8,6 +9,7 @@ mod exhaustive;
 mod file;
 mod graph;
 mod greedy;
+mod hypergraph;
 mod lower;
 mod magnitude;
 mod net;
@@ -15,8 +17,10 @@ mod parts;
 mod plan;
 mod portfolio;
 mod price;
+mod schedule;
 mod search;
 mod shape;
+mod slicing;
 mod subsets;
 mod tree;
 mod windows;

@@ -1,7 +1,7 @@
 //! The form of a shape that the methods work on.
 
+use super::Shape;
 use super::cost::Leaves;
-use super::{Plan, Shape};
 use crate::tensor::Label;
 
 /// Pairwise steps as in [`super::Plan`].
@@ -61,12 +61,5 @@ impl Net {
     /// log2 of the product of these labels' sizes.
     pub fn size(&self, set: &[u32]) -> f64 {
         set.iter().map(|&l| self.bits[l as usize]).sum()
-    }
-}
-
-impl Plan {
-    /// Steps without slices.
-    pub(crate) fn unsliced(steps: Steps) -> Self {
-        Self { steps, sliced: Vec::new() }
     }
 }

@@ -1,10 +1,11 @@
-//! All methods together on one connected part.
+//! All methods together on one connected part, or one of them alone.
 //!
 //! The work is laid out in rounds. A round is a list of tasks, each with its own seed and its
 //! own share of the work, which run side by side; its outcome is taken in the order of the
 //! list. So the plan depends on the seed and the work alone, not on the threads.
 
 use super::anneal::{self, Schedule};
+use super::bisection;
 use super::elimination::{self, Choice};
 use super::exhaustive;
 use super::graph::LineGraph;
@@ -17,25 +18,34 @@ use super::tree::Tree;
 use super::windows;
 use super::{Method, Objective};
 use crate::watch::{News, Watch};
+use rand::Rng;
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::SeedableRng;
 use rayon::prelude::*;
-use std::sync::Mutex;
+use std::sync::{Mutex, PoisonError};
 
 /// Tasks of a round; fixed, so that the threads do not matter.
 const TASKS: usize = 8;
 /// Rounds after the first.
 const ROUNDS: u64 = 6;
+/// Rounds without a better plan after which the search ends, once no narrower step is possible.
+const PATIENCE: u32 = 3;
 /// Line graphs with more labels than this are left to the methods that do not build them.
-const LINE: usize = 4000;
+pub(crate) const LINE: usize = 4000;
+/// Trees kept from round to round.
+const POOL: usize = 6;
 
 /// What is sought for a part.
 pub(crate) struct Task<'a> {
     pub net: &'a Net,
     pub objective: Objective,
     pub method: Method,
+    /// Up to so many tensors the portfolio takes the exhaustive method.
+    pub exhaustive: usize,
     pub seed: u64,
     pub work: u64,
+    /// A known order to begin with.
+    pub start: Option<&'a [(u32, u32)]>,
     pub watch: &'a dyn Watch,
 }
 
@@ -55,30 +65,72 @@ struct Candidate {
 }
 
 /// What an objective makes of a tree; smaller is better.
-pub(crate) fn score(tree: &Tree, objective: Objective) -> f64 {
-    let total = tree.total(Price::of(objective));
+fn score(tree: &Tree, objective: Objective) -> f64 {
     match objective {
-        Objective::Balanced => total + tree.widest(),
+        Objective::Balanced => tree.total(Price::ADDS) + tree.widest(),
         Objective::Size => 1000.0 * tree.largest() + tree.total(Price::ADDS),
-        _ => total,
+        _ => tree.total(Price::of(objective)),
     }
 }
 
 struct Run<'a> {
     task: &'a Task<'a>,
     price: Price,
-    best_score: Mutex<f64>,
+    line: Option<LineGraph>,
+    bound: usize,
+    best: Mutex<f64>,
+}
+
+/// Orders a connected part. `None` only where the exhaustive method alone was asked for and
+/// cannot do it.
+pub(crate) fn solve(task: &Task) -> Option<Solved> {
+    let net = task.net;
+    let n = net.tensors.len();
+    if n <= 2 {
+        let steps = if n == 2 { vec![(0, 1)] } else { Vec::new() };
+        return Some(Solved { steps, method: "only order", optimal: true });
+    }
+    let mut run = Run {
+        task,
+        price: Price::of(task.objective),
+        line: None,
+        bound: 0,
+        best: Mutex::new(f64::INFINITY),
+    };
+    let wants = |m: Method| task.method == m || task.method == Method::Portfolio;
+    if task.method == Method::Exhaustive || (wants(Method::Exhaustive) && n <= task.exhaustive) {
+        if let Some(solved) = run.exhaustively() {
+            return Some(solved);
+        }
+        if task.method == Method::Exhaustive {
+            return None;
+        }
+    }
+    if wants(Method::Elimination) {
+        run.line = LineGraph::of(net, LINE);
+        run.bound = run.line.as_ref().map_or(0, |l| lower::best_treewidth(&l.graph, 3));
+    }
+    if task.method != Method::Portfolio {
+        let best = (0..TASKS)
+            .into_par_iter()
+            .map(|i| run.alone(i, task.work / TASKS as u64))
+            .collect::<Vec<_>>()
+            .into_iter()
+            .min_by(|a, b| a.score.total_cmp(&b.score))?;
+        return Some(Solved { steps: best.tree.steps(), method: best.method, optimal: false });
+    }
+    Some(run.portfolio())
 }
 
 impl Run<'_> {
     fn candidate(&self, tree: Tree, method: &'static str) -> Candidate {
         let score = score(&tree, self.task.objective);
-        let mut best = self.best_score.lock().unwrap_or_else(std::sync::PoisonError::into_inner);
+        let mut best = self.best.lock().unwrap_or_else(PoisonError::into_inner);
         if score < *best {
             *best = score;
             self.task.watch.tell(News::Best(&format!(
-                "{:.3} doublings of multiply-adds, widest step {:.1} bits, largest tensor {:.1} bits ({method})",
-                tree.total(Price::ADDS),
+                "10^{:.2} multiply-adds, widest step 2^{:.1}, largest tensor 2^{:.1} ({method})",
+                tree.total(Price::ADDS) * std::f64::consts::LOG10_2,
                 tree.widest(),
                 tree.largest(),
             )));
@@ -90,11 +142,147 @@ impl Run<'_> {
         rng.set_stream(round * TASKS as u64 + task as u64 + 1);
         rng
     }
-    /// Windows, then cold annealing, then windows: never dearer than before.
+    fn better(&self, tree: &Tree, than: Option<&Tree>) -> bool {
+        than.is_none_or(|t| score(tree, self.task.objective) < score(t, self.task.objective))
+    }
+
+    /// The best order of all, where it can be had.
+    fn exhaustively(&self) -> Option<Solved> {
+        let (net, task) = (self.task.net, self.task);
+        let mut known = Tree::new(net, &greedy::order(net, Rule::default(), task.seed));
+        let (aim, cap) = match task.objective {
+            Objective::Size => (Aim::Largest(Price::ADDS), f64::INFINITY),
+            _ => {
+                // A known good order drops most sets.
+                self.polish(&mut known, self.price, 2_000_000, &mut self.rng(0, 0));
+                (Aim::Sum(self.price), known.total(self.price) + 1e-9)
+            }
+        };
+        if let Some(found) = exhaustive::dense(net, aim, cap) {
+            return Some(Solved { steps: found, method: "exhaustive", optimal: true });
+        }
+        if task.method != Method::Exhaustive || task.objective == Objective::Size {
+            return None;
+        }
+        let found = exhaustive::sparse(net, self.price, cap, task.work, task.watch)?;
+        Some(Solved { steps: found, method: "exhaustive, no outer products", optimal: false })
+    }
+
+    /// One method alone, its share of the work.
+    fn alone(&self, i: usize, work: u64) -> Candidate {
+        let mut rng = self.rng(0, i);
+        match self.task.method {
+            Method::Elimination if self.line.is_some() => {
+                self.candidate(self.by_elimination(i, work, &mut rng), "elimination")
+            }
+            Method::Bisection => self.candidate(self.by_bisection(work, &mut rng), "bisection"),
+            Method::Annealing => {
+                self.candidate(self.by_annealing(self.price, work, &mut rng), "annealing")
+            }
+            Method::Windows => {
+                let mut tree = self.greedy_tree(i, &mut rng);
+                let mut left = work;
+                while left > 0 && !self.task.watch.stop() {
+                    let (spent, changed) = windows::pass(
+                        self.task.net,
+                        &mut tree,
+                        self.price,
+                        9,
+                        left,
+                        self.task.watch,
+                    );
+                    left = left.saturating_sub(spent);
+                    if !changed {
+                        break;
+                    }
+                }
+                self.candidate(tree, "windows")
+            }
+            _ => self.candidate(self.by_restarts(i, work, &mut rng), "greedy"),
+        }
+    }
+
+    fn portfolio(&self) -> Solved {
+        let (net, task) = (self.task.net, self.task);
+        let first = Tree::new(net, &greedy::order(net, Rule::default(), task.seed));
+        let mut pool = vec![self.candidate(first, "greedy")];
+        if let Some(steps) = task.start {
+            pool.push(self.candidate(Tree::new(net, steps), "given plan"));
+        }
+        let share = task.work / TASKS as u64;
+        let made: Vec<Candidate> =
+            (0..TASKS).into_par_iter().map(|i| self.from_scratch(i, share * 2 / 5)).collect();
+        pool.extend(made);
+        sift(&mut pool);
+        let mut idle = 0;
+        for round in 1..=ROUNDS {
+            let done = pool.iter().any(|c| c.tree.widest() <= (self.bound + 1) as f64 + 1e-9);
+            if task.watch.stop() || (idle >= PATIENCE && done) {
+                break;
+            }
+            let before = pool[0].score;
+            let made: Vec<Candidate> = (0..TASKS)
+                .into_par_iter()
+                .map(|i| self.from_pool(&pool, round, i, share * 3 / 5 / ROUNDS))
+                .collect();
+            pool.extend(made);
+            sift(&mut pool);
+            idle = if pool[0].score < before - 1e-9 { 0 } else { idle + 1 };
+        }
+        Solved { steps: pool[0].tree.steps(), method: pool[0].method, optimal: false }
+    }
+
+    /// A task of the first round.
+    fn from_scratch(&self, i: usize, work: u64) -> Candidate {
+        let mut rng = self.rng(0, i);
+        let half = work / 2;
+        let (mut tree, method) = match i {
+            0 | 1 if self.line.is_some() => (self.by_elimination(i, half, &mut rng), "elimination"),
+            2 | 3 => (self.by_bisection(half, &mut rng), "bisection"),
+            5.. => {
+                let narrow = self.task.objective == Objective::Balanced && i % 2 == 0;
+                let price = if narrow { Price::NARROW } else { self.price };
+                (self.by_annealing(price, half, &mut rng), "annealing")
+            }
+            _ => (self.by_restarts(i, half, &mut rng), "greedy"),
+        };
+        let price = match self.task.objective {
+            Objective::Balanced if i < 2 => self.price.within(tree.widest()),
+            _ => self.price,
+        };
+        self.polish(&mut tree, price, half, &mut rng);
+        self.candidate(tree, method)
+    }
+
+    /// A task of a later round: anneals one of the best trees so far.
+    fn from_pool(&self, pool: &[Candidate], round: u64, i: usize, work: u64) -> Candidate {
+        let (net, watch) = (self.task.net, self.task.watch);
+        let mut rng = self.rng(round, i);
+        let mut tree = pool[i % pool.len().min(3)].tree.clone();
+        let mut price = self.price;
+        if self.task.objective == Objective::Balanced {
+            let narrowest = pool.iter().map(|c| c.tree.widest()).fold(f64::INFINITY, f64::min);
+            price = match i % 4 {
+                0 if narrowest > (self.bound + 1) as f64 => Price::NARROW,
+                1 => price,
+                _ => price.within(narrowest),
+            };
+        }
+        let hot = [0.1, 0.3, 0.6, 1.0][(i / 2 + round as usize) % 4];
+        let schedule = Schedule { hot, cold: 0.02, work: work * 2 / 3 };
+        anneal::run(net, &mut tree, price, schedule, &mut rng, watch);
+        if price == Price::NARROW {
+            price = self.price.within(tree.widest());
+        }
+        self.polish(&mut tree, price, work / 3, &mut rng);
+        self.candidate(tree, "annealing")
+    }
+
+    /// Windows, then cold annealing, then windows again: never dearer than before.
     fn polish(&self, tree: &mut Tree, price: Price, work: u64, rng: &mut ChaCha8Rng) {
         let (net, watch) = (self.task.net, self.task.watch);
         let (spent, _) = windows::pass(net, tree, price, 8, work / 3, watch);
-        let cold = Schedule { hot: 0.05, cold: 0.005, work: (work - spent.min(work)) / 2 };
+        let cold = Schedule { hot: 0.05, cold: 0.005, work: work.saturating_sub(spent) / 2 };
         let spent = spent + anneal::run(net, tree, price, cold, rng, watch);
         let mut left = work.saturating_sub(spent);
         while left > 0 && !watch.stop() {
@@ -105,159 +293,78 @@ impl Run<'_> {
             }
         }
     }
-}
 
-/// Orders a connected part.
-pub(crate) fn solve(task: &Task) -> Solved {
-    let net = task.net;
-    let n = net.tensors.len();
-    if n <= 2 {
-        let steps = if n == 2 { vec![(0, 1)] } else { Vec::new() };
-        return Solved { steps, method: "only order", optimal: true };
-    }
-    let run = Run { task, price: Price::of(task.objective), best_score: Mutex::new(f64::INFINITY) };
-    let first = Tree::new(net, &greedy::order(net, Rule::default(), task.seed));
-    let mut pool = vec![run.candidate(first, "greedy")];
-    if n <= exhaustive::DENSE {
-        let aim = match task.objective {
-            Objective::Size => Aim::Largest(Price::ADDS),
-            _ => Aim::Sum(run.price),
+    fn greedy_tree(&self, i: usize, rng: &mut ChaCha8Rng) -> Tree {
+        let rule = match i {
+            0 => Rule::default(),
+            1 => Rule { alpha: 0.5, noise: 0.0 },
+            2 => Rule { alpha: 0.0, noise: 0.0 },
+            _ => Rule {
+                alpha: rng.random_range(0.0..1.2),
+                noise: 2.0 * 0.02f64.powf(rng.random::<f64>()),
+            },
         };
-        let cap = match aim {
-            Aim::Sum(price) => {
-                // A short descent gives a bound that drops most sets.
-                let tree = &mut pool[0].tree.clone();
-                run.polish(tree, price, 200_000, &mut run.rng(0, 0));
-                tree.total(price) + 1e-9
-            }
-            Aim::Largest(_) => f64::INFINITY,
-        };
-        if let Some(found) = exhaustive::dense(net, aim, cap) {
-            return Solved { steps: found.steps, method: "exhaustive", optimal: true };
-        }
+        Tree::new(self.task.net, &greedy::order(self.task.net, rule, rng.random()))
     }
-    let line = LineGraph::of(net, LINE);
-    let share = task.work / TASKS as u64;
-    // First round: every method from scratch.
-    let made: Vec<Vec<Candidate>> = (0..TASKS)
-        .into_par_iter()
-        .map(|i| {
-            let mut rng = run.rng(0, i);
-            let work = share * 2 / 5;
-            match (i, &line) {
-                (0 | 1, Some(line)) => by_elimination(&run, line, i, work, &mut rng),
-                (4.., _) => by_annealing(&run, i, work, &mut rng),
-                _ => by_restarts(&run, i, work, &mut rng),
-            }
-        })
-        .collect();
-    pool.extend(made.into_iter().flatten());
-    sift(&mut pool);
-    for round in 1..=ROUNDS {
-        if task.watch.stop() {
-            break;
-        }
-        let narrowest = pool.iter().map(|c| c.tree.widest()).fold(f64::INFINITY, f64::min);
-        let made: Vec<Candidate> = (0..TASKS)
-            .into_par_iter()
-            .map(|i| {
-                let mut rng = run.rng(round, i);
-                let from = &pool[i % pool.len().min(3)];
-                let mut tree = from.tree.clone();
-                let work = share * 3 / 5 / ROUNDS;
-                let mut price = run.price;
-                if task.objective == Objective::Balanced {
-                    price = match i % 4 {
-                        0 => Price::NARROW,
-                        1 => price,
-                        _ => price.within(narrowest),
-                    };
-                }
-                let hot = [0.1, 0.3, 0.6, 1.0][(i + round as usize) % 4];
-                let schedule = Schedule { hot, cold: 0.02, work: work * 2 / 3 };
-                anneal::run(net, &mut tree, price, schedule, &mut rng, task.watch);
-                let price =
-                    if price == Price::NARROW { run.price.within(tree.widest()) } else { price };
-                run.polish(&mut tree, price, work / 3, &mut rng);
-                run.candidate(tree, "annealing")
-            })
-            .collect();
-        pool.extend(made);
-        sift(&mut pool);
+    fn legs(&self) -> u64 {
+        self.task.net.tensors.iter().map(|t| t.len() as u64 + 1).sum()
     }
-    Solved { steps: pool[0].tree.steps(), method: pool[0].method, optimal: false }
+
+    fn by_restarts(&self, i: usize, work: u64, rng: &mut ChaCha8Rng) -> Tree {
+        let mut best = self.greedy_tree(i % 3, rng);
+        let once = 60 * self.legs();
+        let mut spent = once;
+        while spent < work && !self.task.watch.stop() {
+            let tree = self.greedy_tree(TASKS, rng);
+            spent += once;
+            if self.better(&tree, Some(&best)) {
+                best = tree;
+            }
+        }
+        best
+    }
+
+    fn by_bisection(&self, work: u64, rng: &mut ChaCha8Rng) -> Tree {
+        let net = self.task.net;
+        let legs = self.legs();
+        let once = 200 * legs * u64::from(legs.max(2).ilog2());
+        let mut best: Option<Tree> = None;
+        let mut spent = 0;
+        loop {
+            let slack = 0.02 + 0.3 * rng.random::<f64>();
+            let tree = Tree::new(net, &bisection::order(net, self.price, slack, rng));
+            spent += once;
+            if self.better(&tree, best.as_ref()) {
+                best = Some(tree);
+            }
+            if spent >= work || self.task.watch.stop() {
+                break;
+            }
+        }
+        best.expect("one order was made")
+    }
+
+    fn by_elimination(&self, i: usize, work: u64, rng: &mut ChaCha8Rng) -> Tree {
+        let net = self.task.net;
+        let Some(line) = &self.line else { return self.greedy_tree(i, rng) };
+        let choice = [Choice::Fill, Choice::FillAndDegree, Choice::Degree][i % 3];
+        let order = elimination::greedy(line, choice, rng);
+        let goal = (self.bound + 1) as f64;
+        let (order, _) = elimination::improve(line, order, goal, work, rng, self.task.watch);
+        Tree::new(net, &elimination::steps(net, line, &order))
+    }
+
+    fn by_annealing(&self, price: Price, work: u64, rng: &mut ChaCha8Rng) -> Tree {
+        let mut tree = self.greedy_tree(0, rng);
+        let schedule = Schedule { hot: 2.0, cold: 0.02, work };
+        anneal::run(self.task.net, &mut tree, price, schedule, rng, self.task.watch);
+        tree
+    }
 }
 
 /// Keeps the best few, best first; the earlier of equals first.
 fn sift(pool: &mut Vec<Candidate>) {
     pool.sort_by(|a, b| a.score.total_cmp(&b.score));
     pool.dedup_by(|a, b| a.score == b.score);
-    pool.truncate(6);
-}
-
-fn by_elimination(
-    run: &Run,
-    line: &LineGraph,
-    i: usize,
-    work: u64,
-    rng: &mut ChaCha8Rng,
-) -> Vec<Candidate> {
-    let net = run.task.net;
-    let choice = if i == 0 { Choice::Fill } else { Choice::FillAndDegree };
-    let goal = lower::best_treewidth(&line.graph, 3) as f64;
-    let order = elimination::greedy(line, choice, rng);
-    let (order, _) = elimination::improve(line, order, goal, work / 2, rng, run.task.watch);
-    let mut tree = Tree::new(net, &elimination::steps(net, line, &order));
-    let mut price = run.price;
-    if run.task.objective == Objective::Balanced {
-        price = price.within(tree.widest());
-    }
-    run.polish(&mut tree, price, work / 2, rng);
-    vec![run.candidate(tree, "elimination")]
-}
-
-fn by_restarts(run: &Run, i: usize, work: u64, rng: &mut ChaCha8Rng) -> Vec<Candidate> {
-    use rand::Rng;
-    let net = run.task.net;
-    let legs: usize = net.tensors.iter().map(Vec::len).sum();
-    let once = 60 * (legs as u64 + 1);
-    let mut best: Option<Tree> = None;
-    let mut spent = 0;
-    let mut first = true;
-    while first || (spent < work / 2 && !run.task.watch.stop()) {
-        let rule = if first {
-            Rule { alpha: if i % 2 == 0 { 0.5 } else { 0.0 }, noise: 0.0 }
-        } else {
-            Rule {
-                alpha: rng.random_range(0.0..1.2),
-                noise: 0.02f64.powf(rng.random::<f64>()) * 2.0,
-            }
-        };
-        first = false;
-        let tree = Tree::new(net, &greedy::order(net, rule, rng.random()));
-        spent += once;
-        if best
-            .as_ref()
-            .is_none_or(|b| score(&tree, run.task.objective) < score(b, run.task.objective))
-        {
-            best = Some(tree);
-        }
-    }
-    let mut tree = best.expect("one order is made");
-    run.polish(&mut tree, run.price, work / 2, rng);
-    vec![run.candidate(tree, "greedy with restarts")]
-}
-
-fn by_annealing(run: &Run, i: usize, work: u64, rng: &mut ChaCha8Rng) -> Vec<Candidate> {
-    let net = run.task.net;
-    let mut tree = Tree::new(net, &greedy::order(net, Rule::default(), run.task.seed));
-    let price = if run.task.objective == Objective::Balanced && i % 2 == 0 {
-        Price::NARROW
-    } else {
-        run.price
-    };
-    let schedule = Schedule { hot: 2.0, cold: 0.02, work: work * 2 / 3 };
-    anneal::run(net, &mut tree, price, schedule, rng, run.task.watch);
-    run.polish(&mut tree, run.price, work / 3, rng);
-    vec![run.candidate(tree, "annealing")]
+    pool.truncate(POOL);
 }

@@ -3,8 +3,8 @@
 use super::graph::LineGraph;
 use super::net::{Net, Steps};
 use super::portfolio::{self, Solved, Task};
-use super::{Cost, OrderError, Plan, Shape, cost, lower, parts};
-use crate::tensor::Label;
+use super::price::Price;
+use super::{Cost, OrderError, Plan, Shape, cost, lower, parts, slicing};
 use crate::watch::{News, Watch};
 
 /// What is to be small.
@@ -35,6 +35,53 @@ pub enum Method {
     /// All of them, sharing the work.
     #[default]
     Portfolio,
+    /// Every order weighed; fails on networks that are too large for it.
+    Exhaustive,
+    /// Greedy orders with randomised restarts.
+    Greedy,
+    /// Orders in which labels are summed, improved by local search.
+    Elimination,
+    /// Recursive bisection of the network.
+    Bisection,
+    /// Simulated annealing on trees.
+    Annealing,
+    /// Greedy orders whose windows are solved exactly, again and again.
+    Windows,
+}
+
+impl Method {
+    /// All methods.
+    pub const ALL: [Self; 7] = [
+        Self::Portfolio,
+        Self::Exhaustive,
+        Self::Greedy,
+        Self::Elimination,
+        Self::Bisection,
+        Self::Annealing,
+        Self::Windows,
+    ];
+    /// Its name.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Portfolio => "portfolio",
+            Self::Exhaustive => "exhaustive",
+            Self::Greedy => "greedy",
+            Self::Elimination => "elimination",
+            Self::Bisection => "bisection",
+            Self::Annealing => "annealing",
+            Self::Windows => "windows",
+        }
+    }
+    /// The method of this name.
+    ///
+    /// # Errors
+    /// [`OrderError::Method`] with the names there are.
+    pub fn parse(name: &str) -> Result<Self, OrderError> {
+        Self::ALL.into_iter().find(|m| m.name() == name).ok_or_else(|| OrderError::Method {
+            name: name.into(),
+            known: Self::ALL.map(Self::name).join(", "),
+        })
+    }
 }
 
 /// What order is sought.
@@ -46,12 +93,16 @@ pub struct Request {
     pub objective: Objective,
     /// Which method looks.
     pub method: Method,
+    /// Up to so many tensors (at most 20) the portfolio weighs every order.
+    pub exhaustive: usize,
+    /// A known plan to begin with: the result is no worse, and slices its labels too.
+    pub start: Option<Plan>,
     /// Most elements that may be alive at once; a plan that takes more is sliced.
     pub memory: Option<u64>,
     /// Work to spend, in labels touched. The same work and seed give the same plan whatever
     /// the number of threads.
     pub work: u64,
-    /// Outer bound on the time by [`Watch::seconds`]. A search that this ends, or a stop,
+    /// Outer bound on the time from the call on by [`Watch::seconds`]. A search that this ends, or a stop,
     /// gives the best plan so far, which then depends on the machine's speed.
     pub seconds: f64,
 }
@@ -62,6 +113,8 @@ impl Default for Request {
             seed: 0,
             objective: Objective::default(),
             method: Method::default(),
+            exhaustive: 20,
+            start: None,
             memory: None,
             work: 200_000_000,
             seconds: f64::INFINITY,
@@ -79,7 +132,10 @@ pub struct Found {
     pub cost: Cost,
     /// The method that found it (for several parts: the largest part's).
     pub method: String,
-    /// No order without slices has a widest step of fewer labels.
+    /// log10 of the factor in multiply-adds that slicing costs against the unsliced order
+    /// found first; below 0 where refinement won more.
+    pub slicing_log10_overhead: f64,
+    /// No order (with the same labels sliced as in a given plan) has a widest step of fewer labels.
     pub widest_step_bound: usize,
     /// Whether this order is proven best for its objective.
     pub optimal: bool,
@@ -116,32 +172,77 @@ impl Watch for Until<'_> {
 pub fn search(shape: &Shape, request: &Request, watch: &dyn Watch) -> Result<Found, OrderError> {
     shape.check()?;
     let until = Until { watch, end: watch.seconds() + request.seconds };
-    let net = Net::of(shape, &[]);
-    watch.tell(News::Stage("looking for an order"));
-    let (steps, solved) = order_net(&net, request, &until);
-    let mut plan = Plan::unsliced(steps);
-    let mut price = cost(shape, &plan)?;
-    if let Some(limit) = request.memory {
-        while price.log2_peak_elements > (limit as f64).log2() {
-            (plan, price) = slice_once(shape, &plan, limit)?;
+    let sliced = match &request.start {
+        Some(plan) => {
+            cost(shape, plan)?;
+            plan.sliced.clone()
         }
+        None => Vec::new(),
+    };
+    let net = Net::of(shape, &sliced);
+    watch.tell(News::Stage("looking for an order"));
+    // Where slices follow, their refinement has its part of the work.
+    let (work, rest) = match request.memory {
+        Some(_) => (request.work / 3 * 2, request.work / 3),
+        None => (request.work, 0),
+    };
+    let (steps, solved) = order_net(&net, request, work, &until)?;
+    let mut plan = Plan { steps, sliced };
+    plan.steps = slicing::scheduled(shape, &plan);
+    let mut price = cost(shape, &plan)?;
+    let unsliced = price.log10_multiply_adds;
+    if let Some(memory) = request.memory {
+        let limit = slicing::Limit {
+            peak: (memory as f64).log2(),
+            price: Price::of(request.objective),
+            seed: request.seed,
+            work: rest,
+        };
+        (plan, price) = slicing::fit(shape, plan, &limit, &until)?;
     }
-    let bound = widest_step_bound(shape, &net);
     Ok(Found {
+        widest_step_bound: widest_step_bound(shape, &net),
+        slicing_log10_overhead: price.log10_multiply_adds - unsliced,
         plan,
         cost: price,
         method: solved.method.into(),
-        widest_step_bound: bound,
         optimal: solved.optimal && price.slices == 1,
         cut_short: until.stop(),
     })
 }
 
 /// Orders all parts of a net; the second value tells of the largest part, `optimal` of all.
-fn order_net(net: &Net, request: &Request, watch: &dyn Watch) -> (Steps, Solved) {
+fn order_net(
+    net: &Net,
+    request: &Request,
+    work: u64,
+    watch: &dyn Watch,
+) -> Result<(Steps, Solved), OrderError> {
+    let task = |net, start, work| {
+        let task = Task {
+            net,
+            objective: request.objective,
+            method: request.method,
+            exhaustive: request.exhaustive,
+            seed: request.seed,
+            work,
+            start,
+            watch,
+        };
+        portfolio::solve(&task).ok_or(OrderError::TooWide { tensors: task.net.tensors.len() })
+    };
+    if let Some(plan) = &request.start {
+        let solved = task(net, Some(&plan.steps), work)?;
+        return Ok((solved.steps.clone(), solved));
+    }
     let all = parts::split(net);
     let weight = |p: &parts::Part| (p.tensors.len() as u64).pow(2);
-    let total: u64 = all.iter().filter(|p| p.tensors.len() > 2).map(weight).sum();
+    let total: u64 = all
+        .iter()
+        .enumerate()
+        .filter(|(i, p)| p.like == *i && p.tensors.len() > 2)
+        .map(|(_, p)| weight(p))
+        .sum();
     let mut solved: Vec<Solved> = Vec::with_capacity(all.len());
     for (i, part) in all.iter().enumerate() {
         if part.like < i {
@@ -149,14 +250,7 @@ fn order_net(net: &Net, request: &Request, watch: &dyn Watch) -> (Steps, Solved)
             continue;
         }
         let share = weight(part) as f64 / total.max(1) as f64;
-        solved.push(portfolio::solve(&Task {
-            net: &part.net,
-            objective: request.objective,
-            method: request.method,
-            seed: request.seed,
-            work: (request.work as f64 * share) as u64,
-            watch,
-        }));
+        solved.push(task(&part.net, None, (work as f64 * share) as u64)?);
     }
     let largest = (0..all.len())
         .max_by_key(|&i| (all[i].tensors.len(), std::cmp::Reverse(i)))
@@ -164,7 +258,7 @@ fn order_net(net: &Net, request: &Request, watch: &dyn Watch) -> (Steps, Solved)
     let optimal = solved.iter().all(|s| s.optimal);
     let steps: Vec<Steps> = solved.iter().map(|s| s.steps.clone()).collect();
     let summary = Solved { steps: Vec::new(), method: solved[largest].method, optimal };
-    (parts::join(net, &all, &steps), summary)
+    Ok((parts::join(net, &all, &steps), summary))
 }
 
 /// A proven lower bound on the labels of the widest step of any unsliced order.
@@ -183,28 +277,4 @@ fn widest_step_bound(shape: &Shape, net: &Net) -> usize {
         }
     }
     bound
-}
-
-/// Slices the label that costs least for each halving of the peak.
-fn slice_once(shape: &Shape, plan: &Plan, limit: u64) -> Result<(Plan, Cost), OrderError> {
-    let before = cost(shape, plan)?;
-    let mut best: Option<(f64, Plan, Cost)> = None;
-    for l in (0..shape.sizes.len() as u32).map(Label::new) {
-        if shape.sizes[l.index()] < 2 || plan.sliced.contains(&l) {
-            continue;
-        }
-        let mut next = plan.clone();
-        next.sliced.push(l);
-        let price = cost(shape, &next)?;
-        let gain = before.log2_peak_elements - price.log2_peak_elements;
-        if gain <= 1e-9 {
-            continue;
-        }
-        let loss = price.log10_multiply_adds - before.log10_multiply_adds;
-        if best.as_ref().is_none_or(|b| loss / gain < b.0) {
-            best = Some((loss / gain, next, price));
-        }
-    }
-    best.map(|(_, p, c)| (p, c))
-        .ok_or(OrderError::Memory { limit, needed: before.log2_peak_elements })
 }
