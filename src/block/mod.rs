@@ -8,6 +8,7 @@
 //! any isometric split have norm 1; encoders are isometries from their bulk legs.
 
 mod cyclotomic;
+mod encoder;
 mod entries;
 mod error;
 mod exact;
@@ -16,6 +17,7 @@ mod family;
 mod isometry;
 mod npy;
 mod numeric;
+mod pauli_text;
 mod prime_part;
 mod request;
 mod stabilizer;

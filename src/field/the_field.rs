@@ -234,8 +234,8 @@ impl Field {
         let mut out = vec![vec![0; m]; m];
         for j in 0..m {
             let xj = self.0.prime.pow(j as u32);
-            for (i, d) in self.digits(self.mul(a, xj)).into_iter().enumerate() {
-                out[i][j] = d;
+            for (row, d) in out.iter_mut().zip(self.digits(self.mul(a, xj))) {
+                row[j] = d;
             }
         }
         out

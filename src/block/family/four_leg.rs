@@ -1,9 +1,10 @@
 //! Perfect tensors with four legs: pairs of orthogonal Latin squares, and six levels.
 
-use super::{Family, Legs, six_level};
+use super::perfect_parts::{self, Recipe, field_of};
+use super::{Family, Legs, latin_squares, six_level};
 use crate::block::existence::obstruction;
 use crate::block::{Block, BlockError, PrimePart, Request, Stabilizer};
-use crate::field::{Field, factorise};
+use crate::field::factorise;
 
 pub(super) const FAMILY: Family = Family {
     name: "four-leg",
@@ -46,10 +47,22 @@ pub(super) fn constructions(d: usize) -> Vec<(&'static str, Build)> {
     let mut out: Vec<(&'static str, Build)> = Vec::new();
     if d == 6 {
         out.push(("cube-roots", six_level::cube_roots));
+        out.push(("quadratic", six_level::quadratic));
+        out.push(("quadratic-mixed", six_level::quadratic_mixed));
     }
     let factors = factorise(d as u64);
     if d == 1 || factors.iter().all(|&(p, m)| p.pow(m) >= 3) {
         out.push(("linear-squares", linear_squares));
+        out.push(("graph", graph));
+    }
+    if d % 2 == 1 && d > 1 {
+        out.push(("cyclic-squares", latin_squares::cyclic));
+    }
+    if d == 10 || d == 14 {
+        out.push(("difference-matrix", latin_squares::difference_matrix));
+    }
+    if latin_squares::wilson_reaches(d) {
+        out.push(("wilson", latin_squares::wilson));
     }
     out
 }
@@ -59,13 +72,15 @@ pub(super) fn constructions(d: usize) -> Vec<(&'static str, Build)> {
 fn linear_squares(d: usize) -> Result<Block, BlockError> {
     let mut parts = Vec::new();
     for (p, m) in factorise(d as u64) {
-        let field = Field::new(p.pow(m)).map_err(|_| BlockError::WrongDimensions {
-            family: "four-leg".to_owned(),
-            expected: "prime powers up to 65536 in every dimension".to_owned(),
-            dims: vec![d; 4],
-        })?;
+        let field = field_of(p, m);
         let a = if m == 1 { 2 } else { field.generator() };
         parts.push(PrimePart::from_field_code(&field, &[vec![1, 0, 1, 1], vec![0, 1, 1, a]]));
     }
     Stabilizer::new(parts).into_perfect("four-leg", 4, d)
+}
+
+/// A weighted graph on four vertices, over every prime power of d.
+fn graph(d: usize) -> Result<Block, BlockError> {
+    let request = Request::new("four-leg", vec![d; 4]);
+    perfect_parts::product(&request, |n, q| perfect_parts::graph(n, q).map(Recipe::Graph))
 }

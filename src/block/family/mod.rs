@@ -3,12 +3,19 @@
 //! A family turns a [`Request`] into a block whose table of isometries it has proven. A new
 //! one is a file here and a line in [`FAMILIES`].
 
+mod codes;
 mod four_leg;
 mod graph_state;
+mod latin_squares;
+mod mds;
 mod one_leg;
 mod perfect;
+mod perfect_parts;
+mod random_unitary;
 mod repetition;
 mod six_level;
+mod stabilizer_text;
+mod symmetric;
 
 use super::{Block, BlockError, Request};
 use std::fmt;
@@ -20,6 +27,8 @@ pub enum Legs {
     Exactly(usize),
     /// So many or more, up to 20.
     AtLeast(usize),
+    /// From so many to so many.
+    Between(usize, usize),
     /// An even number from 2 to 20.
     Even,
 }
@@ -29,6 +38,7 @@ impl Legs {
         match self {
             Legs::Exactly(n) => legs == n,
             Legs::AtLeast(n) => (n..=20).contains(&legs),
+            Legs::Between(a, b) => (a..=b).contains(&legs),
             Legs::Even => legs >= 2 && legs.is_multiple_of(2) && legs <= 20,
         }
     }
@@ -39,6 +49,7 @@ impl fmt::Display for Legs {
         match self {
             Legs::Exactly(n) => write!(f, "{n}"),
             Legs::AtLeast(n) => write!(f, "{n} to 20"),
+            Legs::Between(a, b) => write!(f, "{a} to {b}"),
             Legs::Even => write!(f, "an even number (up to 20) of"),
         }
     }
@@ -72,9 +83,20 @@ pub const FAMILIES: &[Family] = &[
     four_leg::FAMILY,
     graph_state::FIVE,
     graph_state::SIX,
+    graph_state::SEVEN,
+    graph_state::EIGHT,
+    mds::FAMILY,
+    codes::FOUR,
+    codes::FIVE,
+    codes::SIX,
+    codes::SEVEN,
+    stabilizer_text::FAMILY,
     repetition::BELL,
     repetition::COPY,
     repetition::IDENTITY,
+    symmetric::W,
+    symmetric::DICKE,
+    random_unitary::FAMILY,
     one_leg::BASIS,
     one_leg::PLUS,
     one_leg::RANDOM,

@@ -1,6 +1,6 @@
 //! The perfect tensor with as many legs as are asked for.
 
-use super::{Family, Legs, find};
+use super::{Family, Legs, find, graph_state};
 use crate::block::existence::obstruction;
 use crate::block::{Block, BlockError, Request};
 
@@ -29,7 +29,9 @@ fn make(request: &Request) -> Result<Block, BlockError> {
         4 => "four-leg",
         5 => "five-leg",
         6 => "six-leg",
-        _ => return Err(BlockError::NoConstruction { legs: n, dimension: d }),
+        7 => "seven-leg",
+        8 => "eight-leg",
+        _ => return graph_state::make(request),
     };
     let family = find(name).expect("a listed family");
     (family.make)(&Request { family: name.to_owned(), ..request.clone() })
