@@ -1,7 +1,14 @@
 //! Networks with bulk legs as codes: what the bulk encodes, what can be recovered, how many
 //! erasures survive.
 mod checks;
+pub mod erasure;
+pub mod greedy;
+pub mod pattern;
+#[cfg(test)]
+mod samples;
 mod span;
 pub mod strata;
+mod the_code;
 
 pub use checks::{Checks, Held};
+pub use the_code::{Code, CodeError};
