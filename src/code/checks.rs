@@ -175,6 +175,22 @@ impl Checks {
     pub fn kernel(&self) -> &[Vec<u32>] {
         &self.kernel
     }
+    /// The same code with another basis of its checks, given as (x|z) rows.
+    pub(super) fn with_rows(&self, rows: Vec<Vec<u32>>) -> Self {
+        let n = self.boundary_digits();
+        let p = u64::from(self.prime);
+        debug_assert_eq!(rows.len(), self.checks);
+        let mut out = Self { check_rows: rows, ..self.clone() };
+        let stride = self.packing.stride();
+        for (c, column) in out.columns.chunks_exact_mut(stride.max(1)).take(2 * n).enumerate() {
+            let (digit, is_z) = (c / 2, c % 2 == 1);
+            for (i, r) in out.check_rows.iter().enumerate() {
+                let v = if is_z { (p - u64::from(r[digit])) % p } else { u64::from(r[n + digit]) };
+                self.packing.set(column, i, v);
+            }
+        }
+        out
+    }
     pub(super) fn packing(&self) -> Packing {
         self.packing
     }

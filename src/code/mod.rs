@@ -1,11 +1,13 @@
 //! Networks with bulk legs as codes: what the bulk encodes, what can be recovered, how many
 //! erasures survive.
 mod checks;
+pub mod distance;
 pub mod erasure;
 pub mod greedy;
 pub mod pattern;
 #[cfg(test)]
 mod samples;
+mod short;
 mod span;
 pub mod strata;
 mod the_code;
