@@ -56,7 +56,7 @@ pub(crate) fn tiled(polygons: &[u32], keep_last: bool, rings: u32, rule: Rule) -
     }
     b.boundary(patch.boundary_numbers().iter().map(|&n| label[n as usize].unwrap()));
     b.bulk(bulk);
-    b.layout(Layout { ring, tiling: Some((5, 4)), place: Vec::new() });
+    b.layout(Layout { ring, tiling: Some((5, 4)), ..Layout::default() });
     b.finish().unwrap()
 }
 
