@@ -44,6 +44,6 @@ pub trait Algebra: Sync {
         b: Self::Tensor,
     ) -> Result<Self::Tensor, ContractError>;
 
-    /// Estimated time of a step for these operands, in nanoseconds of one thread.
-    fn cost(&self, step: &Step, a: &Self::Tensor, b: &Self::Tensor) -> f64;
+    /// Estimated time of step `number` for these operands, in nanoseconds of one thread.
+    fn cost(&self, number: usize, step: &Step, a: &Self::Tensor, b: &Self::Tensor) -> f64;
 }

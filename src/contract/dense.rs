@@ -1,5 +1,6 @@
 //! Dense numbers times a power of two.
 
+use super::arena::Arena;
 use super::layout::{Layout, strides};
 use super::program::Program;
 use super::{Algebra, ContractError, Leaf, Step};
@@ -8,12 +9,28 @@ use crate::linalg::Scalar;
 use crate::tensor::{Dense, Label, gather, largest, reduced};
 use ndarray::{ArrayD, Axis, IxDyn};
 use num_complex::Complex64;
-use std::mem::MaybeUninit;
-use std::sync::atomic::{AtomicU64, Ordering};
+use std::ops::Deref;
+use std::sync::{Arc, OnceLock};
+
+/// The entries of a tensor: its own, or those of a leaf that all slices share.
+pub(super) enum Values<T> {
+    Own(Vec<T>),
+    Shared(Arc<Vec<T>>),
+}
+
+impl<T> Deref for Values<T> {
+    type Target = [T];
+    fn deref(&self) -> &[T] {
+        match self {
+            Self::Own(v) => v,
+            Self::Shared(v) => v,
+        }
+    }
+}
 
 /// A dense intermediate: `values`·2^`exponent`, axes in the order that the layout planned.
 pub(super) struct Held<T> {
-    pub values: Vec<T>,
+    pub values: Values<T>,
     pub exponent: i64,
     /// No entry exceeds 2^high.
     high: i64,
@@ -21,68 +38,27 @@ pub(super) struct Held<T> {
     low: i64,
 }
 
-/// Bounds on magnitudes beyond which an intermediate is scaled back to about 1. Products of
-/// two within them stay far inside the range of a double.
-const WIDE: i64 = 256;
+/// Bounds on magnitudes, in powers of two, beyond which an intermediate is scaled back to
+/// about 1. Products of two within them stay far inside the range of the numbers.
+fn wide<T: Scalar>() -> i64 {
+    if T::EPSILON > 1e-10 { 24 } else { 256 }
+}
 /// Entries up to which scaling is done at every step, since it costs next to nothing.
-const SMALL: usize = 1 << 10;
+const SMALL: usize = 1 << 9;
 
-/// The dense algebra for one program.
-pub(super) struct DenseAlgebra<'a> {
+/// The dense algebra of one program.
+pub(super) struct DenseAlgebra<'a, T> {
     program: &'a Program,
     layout: &'a Layout,
-    multiply_adds: std::sync::Mutex<u128>,
-    live: AtomicU64,
-    peak: AtomicU64,
+    pub arena: &'a Arena<T>,
+    /// Leaves that no slice changes, kept after their first use where there are slices.
+    kept: Vec<OnceLock<Kept<T>>>,
 }
 
-impl<'a> DenseAlgebra<'a> {
-    pub fn new(program: &'a Program, layout: &'a Layout) -> Self {
-        Self {
-            program,
-            layout,
-            multiply_adds: std::sync::Mutex::new(0),
-            live: AtomicU64::new(0),
-            peak: AtomicU64::new(0),
-        }
-    }
-    pub fn multiply_adds(&self) -> u128 {
-        *self.multiply_adds.lock().expect("no thread panics while it holds the count")
-    }
-    pub fn peak_bytes(&self) -> u64 {
-        self.peak.load(Ordering::Relaxed)
-    }
-    fn born<T>(&self, entries: usize) {
-        let bytes = (entries * size_of::<T>()) as u64;
-        let now = self.live.fetch_add(bytes, Ordering::Relaxed) + bytes;
-        self.peak.fetch_max(now, Ordering::Relaxed);
-    }
-    fn gone<T>(&self, values: Vec<T>) {
-        self.live.fetch_sub((values.len() * size_of::<T>()) as u64, Ordering::Relaxed);
-    }
-    /// The values with their axes in another order.
-    fn moved<T: Scalar>(&self, values: &[T], from: &[Label], to: &[Label]) -> Vec<T> {
-        let sizes = &self.program.sizes;
-        let steps = strides(from, sizes);
-        let place = |l: &Label| steps[from.iter().position(|x| x == l).expect("the same labels")];
-        let dims: Vec<usize> = to.iter().map(|l| sizes[l.index()]).collect();
-        let step: Vec<usize> = to.iter().map(place).collect();
-        self.born::<T>(values.len());
-        fill(values.len(), |out| gather(&dims, &step, values, out))
-    }
-}
-
-/// A vector whose entries `write` writes, all of them.
-fn fill<T: Scalar>(len: usize, write: impl FnOnce(&mut [MaybeUninit<T>])) -> Vec<T> {
-    let mut values: Vec<T> = Vec::with_capacity(len);
-    write(&mut values.spare_capacity_mut()[..len]);
-    // SAFETY: both kernels that are called here write every entry or panic.
-    unsafe { values.set_len(len) };
-    values
-}
+type Kept<T> = (Arc<Vec<T>>, i64, i64);
 
 /// The exponent e with 2^e ≤ x < 2^(e+1).
-fn exponent(x: f64) -> i64 {
+pub(super) fn exponent(x: f64) -> i64 {
     let bits = x.to_bits() >> 52 & 0x7ff;
     if bits == 0 { x.log2().floor() as i64 } else { bits as i64 - 1023 }
 }
@@ -102,21 +78,75 @@ pub(super) fn scale<T: Scalar>(values: &mut [T], e: i64) {
     let mut left = e.clamp(-4000, 4000) as i32;
     while left != 0 {
         let part = left.clamp(-1000, 1000);
-        values.iter_mut().for_each(|x| *x = x.times_two_to(part));
+        let factor = 2f64.powi(part);
+        values.iter_mut().for_each(|x| *x = x.scaled(factor));
         left -= part;
     }
 }
 
-fn hold<T: Scalar>(mut values: Vec<T>, exponent_so_far: i64) -> Held<T> {
-    let top = largest(&values);
-    let e = normalise(&mut values, top);
+/// Scales to about 1 and takes the bounds anew; gives the exponent and the lower bound.
+fn settle<T: Scalar>(values: &mut [T]) -> (i64, i64) {
+    let e = normalise(values, largest(values));
     let least =
         values.iter().map(|x| x.magnitude()).filter(|&x| x > 0.0).fold(f64::INFINITY, f64::min);
-    let low = if least.is_finite() { exponent(least) } else { 0 };
-    Held { values, exponent: exponent_so_far + e, high: 1, low }
+    (e, if least.is_finite() { exponent(least) } else { 0 })
 }
 
-impl<T: Scalar> Algebra for DenseOf<'_, T> {
+impl<'a, T: Scalar> DenseAlgebra<'a, T> {
+    pub fn new(program: &'a Program, layout: &'a Layout, arena: &'a Arena<T>) -> Self {
+        let leaves = if program.slices > 1 { program.leaves.len() } else { 0 };
+        let kept = (0..leaves).map(|_| OnceLock::new()).collect();
+        Self { program, layout, arena, kept }
+    }
+
+    /// Order of a tensor's axes.
+    pub fn order(&self, node: usize) -> &[Label] {
+        &self.layout.orders[node]
+    }
+
+    /// The values with their axes in another order.
+    fn moved(&self, values: &[T], from: &[Label], to: &[Label]) -> Vec<T> {
+        let sizes = &self.program.sizes;
+        let steps = strides(from, sizes);
+        let place = |l: &Label| steps[from.iter().position(|x| x == l).expect("the same labels")];
+        let dims: Vec<usize> = to.iter().map(|l| sizes[l.index()]).collect();
+        let step: Vec<usize> = to.iter().map(place).collect();
+        self.arena.fill(values.len(), |out| gather(&dims, &step, values, out))
+    }
+
+    fn free(&self, values: Values<T>) {
+        if let Values::Own(v) = values {
+            self.arena.give(v);
+        }
+    }
+
+    /// A tensor from entries in the order that the layout planned.
+    pub fn hold(&self, mut values: Vec<T>, exponent: i64) -> Held<T> {
+        self.arena.adopt(values.len());
+        let (e, low) = settle(&mut values);
+        Held { values: Values::Own(values), exponent: exponent + e, high: 1, low }
+    }
+
+    /// The final tensor with its axes in the order of the open labels.
+    pub fn finish(&self, held: Held<T>) -> (ArrayD<T>, i64) {
+        let from = self.order(self.layout.orders.len() - 1);
+        let to = &self.program.open;
+        let values = match held.values {
+            Values::Own(v) if from == to => v,
+            other => {
+                let moved = self.moved(&other, from, to);
+                self.free(other);
+                moved
+            }
+        };
+        self.arena.release(values.len());
+        let dims: Vec<usize> = to.iter().map(|l| self.program.sizes[l.index()]).collect();
+        let array = ArrayD::from_shape_vec(IxDyn(&dims), values).expect("one entry a place");
+        (array, held.exponent)
+    }
+}
+
+impl<T: Scalar> Algebra for DenseAlgebra<'_, T> {
     type Tensor = Held<T>;
 
     fn leaf(
@@ -126,6 +156,12 @@ impl<T: Scalar> Algebra for DenseOf<'_, T> {
         block: &Block,
         fixed: &[(Label, usize)],
     ) -> Result<Held<T>, ContractError> {
+        let touched = leaf.axes.iter().any(|l| fixed.iter().any(|f| f.0 == *l));
+        let slot = self.kept.get(number).filter(|_| !touched);
+        if let Some((values, exponent, low)) = slot.and_then(OnceLock::get) {
+            let values = Values::Shared(Arc::clone(values));
+            return Ok(Held { values, exponent: *exponent, high: 1, low: *low });
+        }
         let dense: ArrayD<T> = entries_as(block.entries());
         if !dense.iter().all(|x| x.finite()) {
             return Err(ContractError::NotFinite { tensor: number, block: block.name().into() });
@@ -139,18 +175,17 @@ impl<T: Scalar> Algebra for DenseOf<'_, T> {
             }
         }
         let (labels, small) = reduced(&view, &axes, |l| leaf.labels.contains(&l));
-        debug_assert_eq!(labels, leaf.labels);
-        let order = &self.shared.layout.orders[number];
-        let values = small.into_raw_vec_and_offset().0;
-        self.shared.born::<T>(values.len());
-        let values = if *order == labels {
-            values
-        } else {
-            let moved = self.shared.moved(&values, &labels, order);
-            self.shared.gone(values);
-            moved
-        };
-        Ok(hold(values, 0))
+        let small = small.as_slice().expect("a reduced array is contiguous");
+        let values = self.moved(small, &labels, self.order(number));
+        self.arena.release(values.len());
+        let mut held = self.hold(values, 0);
+        if let Some(slot) = slot
+            && let Values::Own(v) = held.values
+        {
+            let kept = slot.get_or_init(|| (Arc::new(v), held.exponent, held.low));
+            held.values = Values::Shared(Arc::clone(&kept.0));
+        }
+        Ok(held)
     }
 
     fn join(
@@ -160,79 +195,49 @@ impl<T: Scalar> Algebra for DenseOf<'_, T> {
         a: Held<T>,
         b: Held<T>,
     ) -> Result<Held<T>, ContractError> {
-        let shared = self.shared;
-        let plan = &shared.layout.steps[number];
-        let orders = &shared.layout.orders;
-        let bring = |held: Held<T>, side: usize| {
-            let (mut held, from) = (held, &orders[step.operands[side]]);
+        let plan = &self.layout.steps[number];
+        let bring = |mut held: Held<T>, side: usize| {
             if let Some(to) = &plan.moved[side] {
-                let moved = shared.moved(&held.values, from, to);
-                shared.gone(std::mem::replace(&mut held.values, moved));
+                let moved = self.moved(&held.values, self.order(step.operands[side]), to);
+                self.free(std::mem::replace(&mut held.values, Values::Own(moved)));
             }
             held
         };
         let (a, b) = (bring(a, 0), bring(b, 1));
-        let len = shared.program.entries(&orders[shared.program.leaves.len() + number]);
-        shared.born::<T>(len);
-        let mut values = fill(len, |out| plan.join.run(&a.values, &b.values, out));
-        *shared.multiply_adds.lock().expect("no thread panics while it holds the count") +=
-            plan.join.multiply_adds();
-        let terms = shared.program.entries(&step.sum).max(1);
-        let mut held = Held {
-            exponent: a.exponent + b.exponent,
-            // Complex products and sums of `terms` of them.
-            high: a.high + b.high + 1 + (usize::BITS - terms.leading_zeros()) as i64,
-            low: a.low + b.low - 1,
-            values: Vec::new(),
-        };
-        shared.gone(a.values);
-        shared.gone(b.values);
-        if len <= SMALL || held.high > WIDE || held.low < -WIDE {
-            return Ok(hold(values, held.exponent));
+        let len = self.program.entries(self.order(self.program.leaves.len() + number));
+        let mut values = self.arena.fill(len, |out| plan.loops.run(&a.values, &b.values, out));
+        let mut exponent = a.exponent + b.exponent;
+        let terms = self.program.entries(&step.sum).max(1);
+        // One more for the two products of a complex one.
+        let mut high = a.high + b.high + 1 + i64::from(usize::BITS - terms.leading_zeros());
+        let mut low = a.low + b.low - 1;
+        self.free(a.values);
+        self.free(b.values);
+        if len <= SMALL || high > wide::<T>() || low < -wide::<T>() {
+            let (e, least) = settle(&mut values);
+            (exponent, high, low) = (exponent + e, 1, least);
         }
-        std::mem::swap(&mut held.values, &mut values);
-        Ok(held)
+        Ok(Held { values: Values::Own(values), exponent, high, low })
     }
 
-    fn cost(&self, step: &Step, _: &Held<T>, _: &Held<T>) -> f64 {
-        step.multiply_adds as f64 * if T::COMPLEX { 0.08 } else { 0.02 }
-    }
-}
-
-/// The algebra of one number type.
-pub(super) struct DenseOf<'a, T> {
-    shared: &'a DenseAlgebra<'a>,
-    kind: std::marker::PhantomData<fn() -> T>,
-}
-
-impl<'a, T: Scalar> DenseOf<'a, T> {
-    pub fn new(shared: &'a DenseAlgebra<'a>) -> Self {
-        Self { shared, kind: std::marker::PhantomData }
-    }
-    /// The final tensor with its axes in the order of the open labels.
-    pub fn finish(&self, held: Held<T>) -> (ArrayD<T>, i64) {
-        let shared = self.shared;
-        let from = &shared.layout.orders[shared.layout.orders.len() - 1];
-        let to = &shared.program.open;
-        let values = if from == to {
-            held.values
-        } else {
-            let moved = shared.moved(&held.values, from, to);
-            shared.gone(held.values);
-            moved
-        };
-        let dims: Vec<usize> = to.iter().map(|l| shared.program.sizes[l.index()]).collect();
-        shared.live.fetch_sub((values.len() * size_of::<T>()) as u64, Ordering::Relaxed);
-        let array = ArrayD::from_shape_vec(IxDyn(&dims), values).expect("one entry a place");
-        (array, held.exponent)
+    fn cost(&self, number: usize, _: &Step, _: &Held<T>, _: &Held<T>) -> f64 {
+        self.layout.steps[number].loops.nanoseconds(T::COMPLEX, size_of::<T>())
     }
 }
 
 /// A block's entries as dense numbers of this type.
 fn entries_as<T: Scalar>(entries: &Entries) -> ArrayD<T> {
-    match entries.to_dense() {
-        Dense::Real(a) => a.mapv(|x| T::from_c64(Complex64::from(x))),
-        Dense::Complex(a) => a.mapv(T::from_c64),
+    match entries {
+        Entries::Dense(Dense::Real(a)) => a.mapv(|x| T::from_c64(Complex64::from(x))),
+        Entries::Dense(Dense::Complex(a)) => a.mapv(T::from_c64),
+        Entries::Sparse(s) => {
+            let mut a = ArrayD::from_elem(IxDyn(s.dims()), T::zero());
+            let flat = a.as_slice_mut().expect("a fresh array is contiguous");
+            for (&i, v) in s.index().iter().zip(s.value()) {
+                flat[i as usize] = T::from_c64(*v);
+            }
+            a
+        }
     }
 }
 

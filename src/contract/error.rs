@@ -52,14 +52,37 @@ pub enum ContractError {
     },
     /// More memory than allowed.
     #[error(
-        "the plan needs {needed} bytes at its peak but {limit} are allowed; allow more, or slice \
-         the plan further"
+        "the contraction needs {needed} bytes even when it is sliced as far as that helps, but \
+         {limit} are allowed"
     )]
     Memory {
-        /// Bytes predicted.
+        /// Fewest bytes predicted for any slicing tried.
         needed: u64,
         /// Bytes allowed.
         limit: u64,
+    },
+    /// A checkpoint that cannot be read or written.
+    #[error("checkpoint {path}: {reason}")]
+    Checkpoint {
+        /// The file or folder.
+        path: String,
+        /// What is wrong.
+        reason: String,
+    },
+    /// A checkpoint of something else.
+    #[error(
+        "checkpoint {path} belongs to another network, plan, precision or version; give another \
+         folder or remove it"
+    )]
+    OtherCheckpoint {
+        /// The file.
+        path: String,
+    },
+    /// Bytes from another process that make no sense.
+    #[error("rank 0 cannot read a partial sum that another rank sent: {reason}")]
+    Message {
+        /// What is wrong.
+        reason: String,
     },
     /// The caller asked to stop.
     #[error("stopped after {done} of {slices} slices")]

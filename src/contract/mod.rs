@@ -9,16 +9,26 @@
 //! exact. The same plan gives the same bits whatever the number of threads.
 
 mod algebra;
+mod arena;
+mod checkpoint;
 mod dense;
 mod error;
 mod layout;
 mod program;
+mod record;
 mod request;
+mod schedule;
+mod slices;
+mod slicing;
 mod solve;
+mod sums;
+mod team;
 mod total;
+mod walk;
 
 pub use algebra::Algebra;
 pub use error::ContractError;
 pub use program::{Leaf, Step};
-pub use request::{Outcome, Problem, Request};
-pub use solve::{run, solve};
+pub use request::{Forecast, Kind, Outcome, Precision, Problem, Request};
+pub use solve::{forecast, run, share, solve};
+pub use team::{Alone, Team};

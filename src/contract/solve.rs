@@ -1,79 +1,257 @@
 //! Runs a plan from end to end.
 
-use super::algebra::Algebra;
-use super::dense::{DenseAlgebra, DenseOf, is_real};
-use super::layout::Layout;
+use super::dense::is_real;
+use super::layout::{Layout, Numbers};
 use super::program::Program;
-use super::total::Total;
-use super::{ContractError, Outcome, Problem, Request};
-use crate::block::Block;
+use super::record::hex;
+use super::schedule::Schedule;
+use super::slices::{self, Setup};
+use super::slicing;
+use super::team::{Alone, Team};
+use super::{ContractError, Forecast, Outcome, Precision, Problem, Request};
+use crate::block::{Block, Entries};
 use crate::linalg::Scalar;
 use crate::network::Network;
 use crate::order::{Plan, Shape};
-use crate::tensor::{Dense, DenseTensor, Label};
-use crate::watch::{News, Watch};
-use ndarray::ArrayD;
-use num_complex::Complex64;
+use crate::tensor::{Dense, DenseTensor};
+use crate::watch::Watch;
+use num_complex::{Complex32, Complex64};
+use sha2::{Digest, Sha256};
 use std::sync::Arc;
+
+impl Problem {
+    /// The contraction of a whole network.
+    pub fn of(network: &Network) -> Self {
+        Self {
+            shape: Shape::of(network),
+            blocks: network.tensor_ids().map(|t| Arc::clone(network.block(t))).collect(),
+        }
+    }
+}
 
 /// Contracts a network along a plan. The axes of the result are the boundary legs, then the
 /// bulk legs.
 ///
+/// ```
+/// use lierne::{block, contract, network::NetworkBuilder, order, watch::Silent};
+/// use std::sync::Arc;
+/// let mut b = NetworkBuilder::new("two");
+/// let [x, y, z] = ["x", "y", "z"].map(|n| b.label(n, 3));
+/// let request = block::Request { family: "identity".into(), dims: vec![3, 3], ..Default::default() };
+/// let one = Arc::new(block::make(&request)?);
+/// b.tensor(None, &[x, y], &one)?;
+/// b.tensor(None, &[y, z], &one)?;
+/// b.boundary([x, z]);
+/// let network = b.finish()?;
+/// let found = order::search(&order::Shape::of(&network), &Default::default(), &Silent)?;
+/// let outcome = contract::run(&network, &found.plan, &Default::default(), &Silent)?;
+/// assert_eq!(outcome.multiply_adds, 27);
+/// # Ok::<(), Box<dyn std::error::Error>>(())
+/// ```
+///
 /// # Errors
-/// [`ContractError`].
+/// As [`solve`].
 pub fn run(
     network: &Network,
     plan: &Plan,
     request: &Request,
     watch: &dyn Watch,
 ) -> Result<Outcome, ContractError> {
-    let problem = Problem {
-        shape: Shape::of(network),
-        blocks: network.tensor_ids().map(|t| Arc::clone(network.block(t))).collect(),
-    };
-    solve(&problem, plan, request, watch)
+    solve(&Problem::of(network), plan, request, watch)
 }
 
 /// Contracts a problem along a plan.
 ///
-/// Time as the plan's multiply-adds say; memory as its peak.
+/// Time as the plan's multiply-adds say; memory as [`forecast`] says, never more.
 ///
 /// # Errors
-/// [`ContractError`].
+/// [`ContractError`]: the plan or the blocks do not fit the shape, an entry is no finite
+/// number, the memory does not suffice, a checkpoint cannot be used, or the caller stopped it.
 pub fn solve(
     problem: &Problem,
     plan: &Plan,
     request: &Request,
     watch: &dyn Watch,
 ) -> Result<Outcome, ContractError> {
-    let _ = request;
-    let shape = &problem.shape;
-    check(problem)?;
-    let program = Program::compile(shape, plan)?;
-    let layout = Layout::plan(&program);
-    let mut seen: Vec<*const Block> = Vec::new();
-    let real = problem.blocks.iter().all(|b| {
-        // Blocks are shared; each is looked at once.
-        if seen.contains(&Arc::as_ptr(b)) {
-            return true;
-        }
-        seen.push(Arc::as_ptr(b));
-        is_real(b.entries())
-    });
-    let shared = DenseAlgebra::new(&program, &layout);
-    let (data, log10_scale) = if real {
-        let (a, s) = slices::<f64>(problem, &program, &shared, watch)?;
-        (Dense::Real(a), s)
-    } else {
-        let (a, s) = slices::<Complex64>(problem, &program, &shared, watch)?;
-        (Dense::Complex(a), s)
+    let outcome = share(problem, plan, request, &Alone, watch)?;
+    Ok(outcome.expect("a single process gets the result"))
+}
+
+/// As [`solve`], the slices spread over the processes of a team. All of them call it with
+/// the same arguments; rank 0 gets the result, with the same bits as a single process would,
+/// the others `None`.
+///
+/// # Errors
+/// As [`solve`]; an error of one rank is that rank's alone, the caller ends the others.
+pub fn share(
+    problem: &Problem,
+    plan: &Plan,
+    request: &Request,
+    team: &dyn Team,
+    watch: &dyn Watch,
+) -> Result<Option<Outcome>, ContractError> {
+    let ready = Ready::new(problem, plan, request)?;
+    let run = match (ready.real, request.precision) {
+        (true, Precision::Double) => finish::<f64>,
+        (false, Precision::Double) => finish::<Complex64>,
+        (true, Precision::Single) => finish::<f32>,
+        (false, Precision::Single) => finish::<Complex32>,
     };
-    Ok(Outcome {
-        tensor: DenseTensor::new(shape.open.clone(), data).expect("one label an axis"),
+    let setup = Setup {
+        problem,
+        program: &ready.program,
+        layout: &ready.layout,
+        schedule: &ready.schedule,
+        together: ready.together,
+        room: ready.arena,
+        key: if request.checkpoint.is_some() || team.size() > 1 {
+            key(problem, &ready, request)
+        } else {
+            String::new()
+        },
+    };
+    let (data, done) = run(&setup, request, team, watch)?;
+    let Some((data, log10_scale)) = data else { return Ok(None) };
+    Ok(Some(Outcome {
+        tensor: DenseTensor::new(problem.shape.open.clone(), data).expect("one label an axis"),
         log10_scale,
-        multiply_adds: shared.multiply_adds(),
-        peak_bytes: shared.peak_bytes(),
+        multiply_adds: ready.program.multiply_adds().saturating_mul(ready.program.slices),
+        done,
+        peak_bytes: ready.bytes,
+        slices: ready.program.slices,
+        sliced: ready.plan.sliced,
+    }))
+}
+
+/// What [`solve`] would take, without doing it.
+///
+/// # Errors
+/// As [`solve`] before it starts to contract.
+pub fn forecast(
+    problem: &Problem,
+    plan: &Plan,
+    request: &Request,
+) -> Result<Forecast, ContractError> {
+    let ready = Ready::new(problem, plan, request)?;
+    Ok(Forecast {
+        bytes: ready.bytes,
+        seconds: ready.layout.nanoseconds * 1e-9 * ready.program.slices as f64,
+        slices: ready.program.slices,
+        plan: ready.plan,
     })
+}
+
+type Finished = (Option<(Dense, f64)>, u128);
+
+fn finish<T: Scalar>(
+    setup: &Setup<'_>,
+    request: &Request,
+    team: &dyn Team,
+    watch: &dyn Watch,
+) -> Result<Finished, ContractError> {
+    let (total, done) = slices::run::<T>(setup, request, team, watch)?;
+    let data = total.map(|t| {
+        let (values, log10_scale) = t.finish();
+        let data = if T::COMPLEX {
+            Dense::Complex(values.mapv_into_any(T::to_c64))
+        } else {
+            Dense::Real(values.mapv_into_any(|x| x.to_c64().re))
+        };
+        (data, log10_scale)
+    });
+    Ok((data, done))
+}
+
+/// A plan made ready to run within the memory.
+struct Ready {
+    plan: Plan,
+    program: Program,
+    layout: Layout,
+    schedule: Schedule,
+    real: bool,
+    together: usize,
+    arena: u64,
+    bytes: u64,
+}
+
+impl Ready {
+    fn new(problem: &Problem, plan: &Plan, request: &Request) -> Result<Self, ContractError> {
+        check(problem)?;
+        // Of tensors that share a block one is looked at.
+        let mut distinct: Vec<&Arc<Block>> = problem.blocks.iter().collect();
+        distinct.sort_by_key(|b| Arc::as_ptr(b));
+        distinct.dedup_by_key(|b| Arc::as_ptr(b));
+        let real = distinct.iter().all(|b| is_real(b.entries()));
+        let numbers = match (real, request.precision) {
+            (true, Precision::Double) => Numbers::of::<f64>(),
+            (false, Precision::Double) => Numbers::of::<Complex64>(),
+            (true, Precision::Single) => Numbers::of::<f32>(),
+            (false, Precision::Single) => Numbers::of::<Complex32>(),
+        };
+        let stored: u64 = distinct.iter().map(|b| stored_bytes(b.entries())).sum();
+        let limit = request.memory.unwrap_or(u64::MAX);
+        let mut plan = plan.clone();
+        let mut fewest = u64::MAX;
+        loop {
+            let ready = Self::fit(problem, &plan, numbers, real, stored, limit)?;
+            if ready.bytes <= limit {
+                return Ok(ready);
+            }
+            fewest = fewest.min(ready.bytes);
+            match slicing::one_more(&problem.shape, &plan)? {
+                Some(next) if next.sliced.len() < 64 => plan = next,
+                _ => return Err(ContractError::Memory { needed: fewest, limit }),
+            }
+        }
+    }
+
+    fn fit(
+        problem: &Problem,
+        plan: &Plan,
+        numbers: Numbers,
+        real: bool,
+        stored: u64,
+        limit: u64,
+    ) -> Result<Self, ContractError> {
+        let shape = &problem.shape;
+        let program = Program::compile(shape, plan)?;
+        let layout = Layout::plan(&program, numbers);
+        let entries: Vec<u64> =
+            problem.blocks.iter().map(|b| b.dims().iter().map(|&d| d as u64).product()).collect();
+        let result: u64 = shape
+            .open
+            .iter()
+            .fold(numbers.bytes as u64, |s, l| s.saturating_mul(shape.sizes[l.index()]));
+        // Partial sums: one a level of the tree, one a slice at work, one that is added.
+        let (held, kept) = if program.slices == 1 {
+            (0, 0)
+        } else {
+            let levels = u64::from(slices::units(program.slices).ilog2()) + 3;
+            let leaves: u64 =
+                program.leaves.iter().map(|l| program.entries(&l.labels) as u64).sum();
+            (result.saturating_mul(levels), leaves.saturating_mul(numbers.bytes as u64))
+        };
+        let base = stored.saturating_add(held).saturating_add(kept);
+        let room = limit.saturating_sub(base);
+        let schedule = Schedule::plan(&program, &layout, numbers, &entries, room);
+        let one = schedule.peak.saturating_add(if program.slices > 1 { result } else { 0 });
+        let fitting = (room / one.max(1)).max(1);
+        let together = fitting
+            .min(rayon::current_num_threads() as u64)
+            .min(slices::units(program.slices)) as usize;
+        // What is forecast does not depend on the number of threads.
+        let bytes = base.saturating_add(one);
+        let arena = one.saturating_mul(together as u64);
+        Ok(Self { plan: plan.clone(), program, layout, schedule, real, together, arena, bytes })
+    }
+}
+
+fn stored_bytes(entries: &Entries) -> u64 {
+    match entries {
+        Entries::Sparse(s) => s.index().len() as u64 * 24,
+        Entries::Dense(Dense::Real(a)) => a.len() as u64 * 8,
+        Entries::Dense(Dense::Complex(a)) => a.len() as u64 * 16,
+    }
 }
 
 fn check(problem: &Problem) -> Result<(), ContractError> {
@@ -95,56 +273,39 @@ fn check(problem: &Problem) -> Result<(), ContractError> {
     Ok(())
 }
 
-fn slices<T: Scalar>(
-    problem: &Problem,
-    program: &Program,
-    shared: &DenseAlgebra<'_>,
-    watch: &dyn Watch,
-) -> Result<(ArrayD<T>, f64), ContractError> {
-    let shape = &problem.shape;
-    let algebra = DenseOf::<T>::new(shared);
-    let dims: Vec<usize> = shape.open.iter().map(|l| shape.sizes[l.index()] as usize).collect();
-    let mut total = Total::zero(&shape.open, &dims);
-    watch.tell(News::Stage("contracting"));
-    for slice in 0..program.slices {
-        let fixed = program.fixed(slice);
-        let stopped = ContractError::Stopped { done: slice, slices: program.slices };
-        let root = one_slice(&algebra, program, &problem.blocks, &fixed, watch, &stopped)?;
-        let (array, exponent) = algebra.finish(root);
-        total.add(&fixed, array, exponent);
-        watch.tell(News::Progress {
-            done: (slice + 1).min(u128::from(u64::MAX)) as u64,
-            total: program.slices.min(u128::from(u64::MAX)) as u64,
-        });
+/// SHA-256 over everything that decides the bits of a partial sum.
+fn key(problem: &Problem, ready: &Ready, request: &Request) -> String {
+    let mut hash = Sha256::new();
+    hash.update(env!("CARGO_PKG_VERSION"));
+    hash.update(problem.shape.hash());
+    for &(a, b) in &ready.plan.steps {
+        hash.update(a.to_le_bytes());
+        hash.update(b.to_le_bytes());
     }
-    Ok(total.finish())
-}
-
-/// Walks the plan once.
-fn one_slice<A: Algebra>(
-    algebra: &A,
-    program: &Program,
-    blocks: &[Arc<Block>],
-    fixed: &[(Label, usize)],
-    watch: &dyn Watch,
-    stopped: &ContractError,
-) -> Result<A::Tensor, ContractError> {
-    let n = program.leaves.len();
-    let mut results: Vec<Option<A::Tensor>> = Vec::with_capacity(program.steps.len());
-    let leaf = |t: usize| algebra.leaf(t, &program.leaves[t], &blocks[t], fixed);
-    for (number, step) in program.steps.iter().enumerate() {
-        if watch.stop() {
-            return Err(stopped.clone());
-        }
-        let mut take = |t: usize| match t.checked_sub(n) {
-            None => leaf(t),
-            Some(s) => Ok(results[s].take().expect("a checked plan uses a tensor once")),
+    hash.update([0xff]);
+    for l in &ready.plan.sliced {
+        hash.update(l.number().to_le_bytes());
+    }
+    hash.update(format!("{:?} {:?}", request.precision, request.kind));
+    let mut known: Vec<(*const Block, [u8; 32])> = Vec::new();
+    for block in &problem.blocks {
+        let at = Arc::as_ptr(block);
+        let digest = match known.iter().find(|k| k.0 == at) {
+            Some(k) => k.1,
+            None => {
+                let mut h = Sha256::new();
+                let sparse = block.entries().to_sparse();
+                for (i, v) in sparse.index().iter().zip(sparse.value()) {
+                    h.update(i.to_le_bytes());
+                    h.update(v.re.to_le_bytes());
+                    h.update(v.im.to_le_bytes());
+                }
+                let digest: [u8; 32] = h.finalize().into();
+                known.push((at, digest));
+                digest
+            }
         };
-        let (a, b) = (take(step.operands[0])?, take(step.operands[1])?);
-        results.push(Some(algebra.join(number, step, a, b)?));
+        hash.update(digest);
     }
-    match results.pop() {
-        Some(root) => Ok(root.expect("the last result is nobody's operand")),
-        None => leaf(0),
-    }
+    hex(&hash.finalize())
 }

@@ -15,7 +15,7 @@ mod permute;
 mod reduce;
 
 pub use dense::{Dense, DenseTensor, TensorError};
-pub(crate) use join::{Join, Leg};
+pub(crate) use join::{Join, Leg, Loops};
 pub use label::Label;
 pub use pair::contract_pair;
 pub(crate) use permute::gather;

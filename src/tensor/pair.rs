@@ -92,7 +92,7 @@ fn pair<T: Scalar>(
     let places: usize = dims.iter().product();
     let mut out: Vec<MaybeUninit<T>> = Vec::with_capacity(places);
     out.resize_with(places, MaybeUninit::uninit);
-    join.run(
+    join.plan().run(
         a.as_slice().expect("a reduced array is contiguous"),
         b.as_slice().expect("a reduced array is contiguous"),
         &mut out,
