@@ -84,6 +84,8 @@ pub struct Common {
     pub quiet: bool,
     /// Threads in use.
     pub threads: usize,
+    /// Whether `--threads` was given.
+    pub threads_given: bool,
     start: Instant,
     bar: ProgressBar,
 }
@@ -104,6 +106,7 @@ impl Common {
             json: args.json,
             quiet: args.quiet,
             threads: rayon::current_num_threads(),
+            threads_given: args.threads > 0,
             start: Instant::now(),
             bar,
         }

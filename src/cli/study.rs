@@ -1,17 +1,220 @@
 //! `lierne study`.
 
+use super::common::{default_memory, parse_bytes};
 use super::{Common, Failure, Verdict};
+use crate::study::answer::Evidence;
+use crate::study::{
+    Limits, Outcome, Provenance, StudyError, StudyFile, StudyResult, run, write_results,
+};
+use crate::watch::Watch;
+use serde_json::json;
+use sha2::{Digest, Sha256};
+use std::path::{Path, PathBuf};
+use std::time::{SystemTime, UNIX_EPOCH};
 
 /// Arguments of `lierne study`.
 #[derive(Debug, clap::Args)]
+#[command(after_help = "Examples:
+  lierne study networks/six-level-squares.toml --out results/six-level-squares
+  lierne study my.toml --out results/my --memory 8GiB --seed 3
+
+A study that was stopped goes on from where it was when the same command is given again.
+Entropies are in nats and, where all boundary legs share one dimension D, in legs (log D).
+Keys of a study file: lierne help conventions.")]
 pub struct Args {
-    /// What the command works on
-    #[arg(value_name = "WORDS", trailing_var_arg = true, allow_hyphen_values = true)]
-    words: Vec<String>,
+    /// The study file (TOML)
+    #[arg(value_name = "FILE")]
+    file: PathBuf,
+    /// Folder for the results; made where it is missing
+    #[arg(long, value_name = "DIR")]
+    out: PathBuf,
+    /// Memory for one contraction, e.g. 4GiB; overrides the study's [default: the study's,
+    /// or 70 % of what is free]
+    #[arg(long, value_name = "SIZE", value_parser = parse_bytes)]
+    memory: Option<u64>,
+    /// Seed of all that is drawn; overrides the study's
+    #[arg(long, value_name = "N")]
+    seed: Option<u64>,
 }
 
 /// Runs the command.
-pub fn run(args: &Args, _common: &Common) -> Result<Verdict, Failure> {
-    let _ = &args.words;
-    Err(Failure::new("`lierne study` is not built yet"))
+pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
+    let mut file = StudyFile::load(&args.file)?;
+    if let Some(seed) = args.seed {
+        file.seed = seed;
+    }
+    let mut limits = Limits::of(&file, default_memory())?;
+    if let Some(memory) = args.memory {
+        limits.memory = memory;
+    }
+    let threads = file.budget.threads.filter(|_| !common.threads_given);
+    match threads {
+        Some(n) => rayon::ThreadPoolBuilder::new()
+            .num_threads(n as usize)
+            .build()?
+            .install(|| answer(args, &file, &limits, common)),
+        None => answer(args, &file, &limits, common),
+    }
+}
+
+fn answer(
+    args: &Args,
+    file: &StudyFile,
+    limits: &Limits,
+    common: &Common,
+) -> Result<Verdict, Failure> {
+    let began = common.seconds();
+    let mut provenance = Provenance {
+        version: env!("CARGO_PKG_VERSION").into(),
+        revision: option_env!("LIERNE_REVISION").map(str::to_owned),
+        command: command(),
+        study_file: file.place.clone(),
+        study_sha256: Sha256::digest(file.text.as_bytes())
+            .iter()
+            .map(|b| format!("{b:02x}"))
+            .collect(),
+        seed: file.seed,
+        threads: rayon::current_num_threads() as u64,
+        memory_bytes: limits.memory,
+        machine: machine(),
+        started: utc(SystemTime::now()),
+        ..Provenance::default()
+    };
+    let mut put = |outcome: &Outcome| -> Result<StudyResult, StudyError> {
+        provenance.wall_seconds = ((common.seconds() - began) * 1000.0).round() / 1000.0;
+        provenance.answers_kept = outcome.kept as u64;
+        provenance.answers_found = (outcome.done - outcome.kept) as u64;
+        write_results(&args.out, file, outcome, &provenance)
+    };
+    // Whatever is wrong with the study is found before the folder is touched.
+    let prepared = run::prepare(file, common)?;
+    std::fs::create_dir_all(&args.out)
+        .map_err(|cause| StudyError::Write { path: args.out.clone(), cause })?;
+    let outcome = run::run(file, prepared, limits, &args.out, common, |o| put(o).map(drop))?;
+    let result = put(&outcome)?;
+    common.clear();
+    if common.json {
+        common.say_json(&json!({
+            "study": result.name,
+            "out": args.out,
+            "complete": result.complete,
+            "asked": result.asked,
+            "answered": result.answered,
+            "kept": outcome.kept,
+            "seconds": common.seconds() - began,
+            "seed": result.seed,
+            "cases": result.cases.iter().map(|c| json!({
+                "case": c.case,
+                "tensors": c.tensors,
+                "boundary": c.boundary,
+                "counts": c.counts,
+            })).collect::<Vec<_>>(),
+        }))?;
+    } else {
+        table(&result, common);
+        common.say(closing(&args.out, common.seconds() - began, &result));
+    }
+    if !outcome.complete() {
+        return Err(StudyError::Stopped { done: outcome.done, total: outcome.total }.into());
+    }
+    Ok(Verdict::Yes)
+}
+
+fn table(result: &StudyResult, common: &Common) {
+    let used: Vec<Evidence> = Evidence::ALL
+        .into_iter()
+        .filter(|e| result.cases.iter().any(|c| c.counts.evidence.get(e.word()) > Some(&0)))
+        .collect();
+    let mut head = format!(
+        "{:<14} {:>8} {:>9} {:>8} {:>9}",
+        "case", "regions", "meet cut", "below", "undecided"
+    );
+    for e in &used {
+        head.push_str(&format!(" {:>13}", e.word()));
+    }
+    common.say(&head);
+    for c in &result.cases {
+        let sum = |f: fn(&crate::study::result::KindCounts) -> u64| -> u64 {
+            c.counts.kinds.values().map(f).sum()
+        };
+        let (all, meet, below) = (sum(|k| k.regions), sum(|k| k.meet_cut), sum(|k| k.below_cut));
+        let mut line =
+            format!("{:<14} {all:>8} {meet:>9} {below:>8} {:>9}", c.case, all - meet - below);
+        for e in &used {
+            line.push_str(&format!(
+                " {:>13}",
+                c.counts.evidence.get(e.word()).copied().unwrap_or(0)
+            ));
+        }
+        common.say(line);
+    }
+}
+
+fn closing(out: &Path, seconds: f64, result: &StudyResult) -> String {
+    format!(
+        "{} answers in {seconds:.1} s, seed {}. Results are in {}; open {} to explore them.",
+        result.answered,
+        result.seed,
+        out.display(),
+        out.join("report.html").display()
+    )
+}
+
+/// The command as it was given, the program by its bare name.
+fn command() -> String {
+    let mut words = vec!["lierne".to_owned()];
+    words.extend(std::env::args().skip(1).map(|a| {
+        let plain =
+            !a.is_empty() && a.chars().all(|c| c.is_ascii_alphanumeric() || "-_./=,:+".contains(c));
+        if plain { a } else { format!("'{}'", a.replace('\'', "'\\''")) }
+    }));
+    words.join(" ")
+}
+
+fn machine() -> String {
+    let cpu = std::fs::read_to_string("/proc/cpuinfo").ok().and_then(|text| {
+        let line = text.lines().find(|l| l.starts_with("model name"))?.to_owned();
+        Some(line.split_once(':')?.1.trim().to_owned())
+    });
+    let cores = std::thread::available_parallelism().map_or(0, usize::from);
+    let kind = format!("{}, {}", std::env::consts::OS, std::env::consts::ARCH);
+    match cpu {
+        Some(name) => format!("{kind}, {cores} cores, {name}"),
+        None => format!("{kind}, {cores} cores"),
+    }
+}
+
+/// A time as 2026-01-31T12:00:00Z.
+fn utc(time: SystemTime) -> String {
+    let s = time.duration_since(UNIX_EPOCH).map_or(0, |d| d.as_secs());
+    let (days, rest) = (s / 86400, s % 86400);
+    // Civil date from days since 1970-01-01: eras of 400 years begin on 1 March.
+    let z = days + 719_468;
+    let (era, doe) = (z / 146_097, z % 146_097);
+    let yoe = (doe - doe / 1460 + doe / 36_524 - doe / 146_096) / 365;
+    let doy = doe - (365 * yoe + yoe / 4 - yoe / 100);
+    let mp = (5 * doy + 2) / 153;
+    let day = doy - (153 * mp + 2) / 5 + 1;
+    let month = if mp < 10 { mp + 3 } else { mp - 9 };
+    let year = yoe + era * 400 + u64::from(month <= 2);
+    format!(
+        "{year:04}-{month:02}-{day:02}T{:02}:{:02}:{:02}Z",
+        rest / 3600,
+        rest / 60 % 60,
+        rest % 60
+    )
+}
+
+#[cfg(test)]
+mod tests {
+    use super::utc;
+    use std::time::{Duration, UNIX_EPOCH};
+
+    #[test]
+    fn dates_are_civil() {
+        let at = |s| utc(UNIX_EPOCH + Duration::from_secs(s));
+        assert_eq!(at(0), "1970-01-01T00:00:00Z");
+        assert_eq!(at(951_782_400), "2000-02-29T00:00:00Z");
+        assert_eq!(at(1_767_225_599), "2025-12-31T23:59:59Z");
+    }
 }

@@ -1,2 +1,42 @@
 //! The whole job from one file.
+//!
+//! A study file ([`StudyFile`]) says which networks, which questions and which means;
+//! [`run`](run::run) answers every question once and keeps each answer as soon as it is
+//! there; [`write_results`] lays out a folder of tables and one self-contained page.
+//!
+//! | question | module |
+//! |---|---|
+//! | Which keys does a study file have? | [`mod@file`] |
+//! | Which networks does it mean? | [`case`] |
+//! | Which regions? | [`regions`] |
+//! | What is an answer? | [`answer`], [`row`] |
+//! | Which files come out? | [`result`], [`csv`], [`report`], [`provenance`] |
+
+pub mod answer;
+pub mod ask;
+pub mod case;
+pub mod csv;
+mod error;
+pub mod file;
+pub mod fit;
+mod folder;
+mod journal;
+pub mod keys;
+mod layout;
 pub mod picture;
+pub mod provenance;
+pub mod regions;
+pub mod report;
+pub mod result;
+pub mod row;
+pub mod run;
+mod write;
+
+pub use case::{Case, Setting};
+pub use error::StudyError;
+pub use file::StudyFile;
+pub use folder::Folder;
+pub use provenance::Provenance;
+pub use result::StudyResult;
+pub use run::{Limits, Outcome};
+pub use write::write_results;
