@@ -84,6 +84,14 @@ pub enum ContractError {
         /// What is wrong.
         reason: String,
     },
+    /// No MPI in this build.
+    #[error(
+        "this build does not know MPI; build it with --features mpi to spread work over processes"
+    )]
+    NoMpi,
+    /// MPI does not start.
+    #[error("MPI did not start, or does not let a program with several threads call it")]
+    MpiStart,
     /// The caller asked to stop.
     #[error("stopped after {done} of {slices} slices")]
     Stopped {

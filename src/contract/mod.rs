@@ -25,6 +25,7 @@ mod sums;
 mod team;
 mod total;
 mod walk;
+mod world;
 
 pub use algebra::Algebra;
 pub use error::ContractError;
@@ -32,3 +33,4 @@ pub use program::{Leaf, Step};
 pub use request::{Forecast, Kind, Outcome, Precision, Problem, Request};
 pub use solve::{forecast, run, share, solve};
 pub use team::{Alone, Team};
+pub use world::world;

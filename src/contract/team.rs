@@ -12,6 +12,8 @@ pub trait Team: Sync {
     fn gather(&self, mine: Vec<Vec<u8>>) -> Option<Vec<Vec<u8>>>;
     /// Hands rank 0's bytes to everybody; the others' argument is not looked at.
     fn broadcast(&self, bytes: Vec<u8>) -> Vec<u8>;
+    /// Ends all processes with this exit status; does nothing where there is only one.
+    fn abort(&self, _status: i32) {}
 }
 
 /// One process.
