@@ -279,6 +279,20 @@ impl<'c> Held<'c> {
         self.added.clear();
         self.span.rewind(self.bare);
     }
+    /// Rows of the span so far: a mark for [`Self::touched_since`].
+    pub(super) fn rows(&self) -> usize {
+        self.span.dimension()
+    }
+    /// Marks the bulk legs on which operators act that came in at or after row `mark`.
+    pub(super) fn touched_since(&self, mark: usize, touched: &mut [bool]) {
+        for r in (mark..self.span.dimension()).filter(|&r| self.span.pivot(r) >= self.checks.checks)
+        {
+            let row = self.span.row(r);
+            for (k, t) in touched.iter_mut().enumerate() {
+                *t = *t || !self.checks.packing.vanishes(row, self.checks.places_of_bulk(k));
+            }
+        }
+    }
     /// Legs added.
     pub fn legs(&self) -> usize {
         self.added.len()

@@ -170,6 +170,11 @@ impl Greedy {
         }
         true
     }
+    /// Whether every tensor was absorbed in a pattern.
+    pub fn absorbs_all(&self, bench: &Bench, pattern: usize) -> bool {
+        let (k, b) = (pattern / 64, pattern % 64);
+        bench.absorbed.iter().all(|a| a[k] >> b & 1 == 1)
+    }
     /// In which patterns a bulk leg was not recovered.
     pub fn lost(&self, bench: &Bench, bulk_leg: usize) -> Bits {
         bench.known[self.bulk[bulk_leg] as usize].map(|x| !x)

@@ -1,10 +1,14 @@
 //! Networks with bulk legs as codes: what the bulk encodes, what can be recovered, how many
 //! erasures survive.
 mod checks;
+mod dense;
 pub mod distance;
 pub mod erasure;
 pub mod greedy;
+pub mod isometry;
 pub mod pattern;
+pub mod reach;
+pub mod recover;
 #[cfg(test)]
 mod samples;
 mod short;
@@ -13,4 +17,5 @@ pub mod strata;
 mod the_code;
 
 pub use checks::{Checks, Held};
+pub use dense::Budget;
 pub use the_code::{Code, CodeError};

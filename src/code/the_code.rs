@@ -78,6 +78,18 @@ pub enum CodeError {
         /// The network's name.
         network: String,
     },
+    /// The search for a contraction order failed.
+    #[error(transparent)]
+    Order(#[from] crate::order::OrderError),
+    /// A contraction failed.
+    #[error(transparent)]
+    Contract(#[from] crate::contract::ContractError),
+    /// A decomposition failed.
+    #[error(transparent)]
+    Linalg(#[from] crate::linalg::LinalgError),
+    /// An entropy could not be had.
+    #[error(transparent)]
+    Entropy(#[from] crate::entropy::EntropyError),
     /// Saved work of another question.
     #[error(
         "the saved samples belong to another network or request (theirs {theirs}, this {ours})"
