@@ -3,6 +3,7 @@
 mod checks;
 mod dense;
 pub mod distance;
+pub mod enumerator;
 pub mod erasure;
 pub mod greedy;
 pub mod isometry;
@@ -15,6 +16,7 @@ mod short;
 mod span;
 pub mod strata;
 mod the_code;
+pub mod tree;
 
 pub use checks::{Checks, Held};
 pub use dense::Budget;
