@@ -212,6 +212,15 @@ pub enum EntropyError {
     /// The order of a core's contraction could not be found.
     #[error(transparent)]
     Order(#[from] crate::order::OrderError),
+    /// A core's contraction failed.
+    #[error(transparent)]
+    Contract(#[from] crate::contract::ContractError),
+    /// A core's decomposition failed.
+    #[error(transparent)]
+    Linalg(#[from] crate::linalg::LinalgError),
+    /// A finite-field contraction failed.
+    #[error(transparent)]
+    Stabilizer(#[from] super::stabilizer::StabilizerError),
     /// A stop was asked for.
     #[error("stopped after {done} of {total} regions")]
     Stopped {

@@ -17,8 +17,10 @@ pub mod closure;
 mod contraction;
 pub mod cut;
 mod flow;
+mod sectors;
 mod solve;
 mod spectrum;
+pub mod stabilizer;
 mod the_core;
 mod wires;
 

@@ -5,6 +5,7 @@ use super::answer::{EntropyError, Evidence, Part, Price, Request, Unsolved};
 use super::bounds::bounds;
 use super::closure::reach;
 use super::contraction::by_contraction;
+use super::stabilizer;
 use super::the_core::Piece;
 use super::wires::Wires;
 use crate::watch::Watch;
@@ -40,6 +41,21 @@ pub(super) fn solve(
     let one_sided = piece.region_legs == 0 || piece.region_legs == network.boundary().len();
     if one_sided && nowhere_zero(piece) {
         return Ok(part);
+    }
+    if request.finite_field {
+        let wires = Wires::of(network);
+        if stabilizer::has_states(&wires) {
+            let inside = piece.inside();
+            let entropy = stabilizer::states(&wires, watch)?
+                .iter()
+                .map(|s| s.entropy(&inside) as f64 * f64::from(s.prime()).ln())
+                .sum();
+            part.lower = entropy;
+            part.upper = entropy;
+            part.evidence = Evidence::FiniteField;
+            part.spectrum = Some(Spectrum::flat(entropy));
+            return Ok(part);
+        }
     }
     match by_contraction(piece, request, watch)? {
         Solved::Values(spectrum, price, error) => {
