@@ -1,12 +1,14 @@
 //! `lierne study`.
 
-use super::common::{default_memory, parse_bytes};
+use super::common::{default_memory, parse_bytes, show_bytes, write_file};
 use super::{Common, Failure, Verdict};
 use crate::study::answer::Evidence;
+use crate::study::template::TEMPLATE;
 use crate::study::{
-    Limits, Outcome, Provenance, StudyError, StudyFile, StudyResult, run, write_results,
+    Limits, Outcome, Provenance, StudyError, StudyFile, StudyResult, check, run, write_results,
+    write_tables,
 };
-use crate::watch::Watch;
+use crate::watch::{News, Watch};
 use serde_json::json;
 use sha2::{Digest, Sha256};
 use std::path::{Path, PathBuf};
@@ -16,6 +18,8 @@ use std::time::{SystemTime, UNIX_EPOCH};
 #[derive(Debug, clap::Args)]
 #[command(after_help = "Examples:
   lierne study networks/six-level-squares.toml --out results/six-level-squares
+  lierne study --new my.toml                         a commented file to begin with
+  lierne study my.toml --check                       what it would cost
   lierne study my.toml --out results/my --memory 8GiB --seed 3
 
 A study that was stopped goes on from where it was when the same command is given again.
@@ -23,11 +27,17 @@ Entropies are in nats and, where all boundary legs share one dimension D, in leg
 Keys of a study file: lierne help conventions.")]
 pub struct Args {
     /// The study file (TOML)
-    #[arg(value_name = "FILE")]
-    file: PathBuf,
+    #[arg(value_name = "FILE", required_unless_present = "new")]
+    file: Option<PathBuf>,
     /// Folder for the results; made where it is missing
-    #[arg(long, value_name = "DIR")]
-    out: PathBuf,
+    #[arg(long, value_name = "DIR", required_unless_present_any = ["new", "check"])]
+    out: Option<PathBuf>,
+    /// Write a commented study file to begin with, and stop
+    #[arg(long, value_name = "FILE", conflicts_with_all = ["file", "out", "check"])]
+    new: Option<PathBuf>,
+    /// Check the study and say what it would cost, without running it
+    #[arg(long)]
+    check: bool,
     /// Memory for one contraction, e.g. 4GiB; overrides the study's [default: the study's,
     /// or 70 % of what is free]
     #[arg(long, value_name = "SIZE", value_parser = parse_bytes)]
@@ -39,7 +49,11 @@ pub struct Args {
 
 /// Runs the command.
 pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
-    let mut file = StudyFile::load(&args.file)?;
+    if let Some(path) = &args.new {
+        return begin(path, common);
+    }
+    let path = args.file.as_ref().ok_or_else(|| Failure::new("name a study file"))?;
+    let mut file = StudyFile::load(path)?;
     if let Some(seed) = args.seed {
         file.seed = seed;
     }
@@ -47,18 +61,22 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
     if let Some(memory) = args.memory {
         limits.memory = memory;
     }
+    if args.check {
+        return price(&file, &limits, common);
+    }
+    let out = args.out.as_ref().ok_or_else(|| Failure::new("name a folder with --out"))?;
     let threads = file.budget.threads.filter(|_| !common.threads_given);
     match threads {
         Some(n) => rayon::ThreadPoolBuilder::new()
             .num_threads(n as usize)
             .build()?
-            .install(|| answer(args, &file, &limits, common)),
-        None => answer(args, &file, &limits, common),
+            .install(|| answer(out, &file, &limits, common)),
+        None => answer(out, &file, &limits, common),
     }
 }
 
 fn answer(
-    args: &Args,
+    out: &Path,
     file: &StudyFile,
     limits: &Limits,
     common: &Common,
@@ -80,23 +98,29 @@ fn answer(
         started: utc(SystemTime::now()),
         ..Provenance::default()
     };
-    let mut put = |outcome: &Outcome| -> Result<StudyResult, StudyError> {
+    let mut stamp = |outcome: &Outcome| {
         provenance.wall_seconds = ((common.seconds() - began) * 1000.0).round() / 1000.0;
         provenance.answers_kept = outcome.kept as u64;
         provenance.answers_found = (outcome.done - outcome.kept) as u64;
-        write_results(&args.out, file, outcome, &provenance)
+        provenance.clone()
     };
     // Whatever is wrong with the study is found before the folder is touched.
     let prepared = run::prepare(file, common)?;
-    std::fs::create_dir_all(&args.out)
-        .map_err(|cause| StudyError::Write { path: args.out.clone(), cause })?;
-    let outcome = run::run(file, prepared, limits, &args.out, common, |o| put(o).map(drop))?;
-    let result = put(&outcome)?;
+    std::fs::create_dir_all(out)
+        .map_err(|cause| StudyError::Write { path: out.to_owned(), cause })?;
+    let outcome = run::run(file, prepared, limits, out, common, |o| {
+        write_tables(out, file, o, &stamp(o)).map(drop)
+    })?;
+    common.tell(News::Stage("report"));
+    let (result, left_out) = write_results(out, file, &outcome, &stamp(&outcome))?;
     common.clear();
+    for sentence in left_out {
+        common.remark(format!("not drawn: {sentence}"));
+    }
     if common.json {
         common.say_json(&json!({
             "study": result.name,
-            "out": args.out,
+            "out": out,
             "complete": result.complete,
             "asked": result.asked,
             "answered": result.answered,
@@ -112,12 +136,104 @@ fn answer(
         }))?;
     } else {
         table(&result, common);
-        common.say(closing(&args.out, common.seconds() - began, &result));
+        common.say(closing(out, common.seconds() - began, &result));
     }
     if !outcome.complete() {
         return Err(StudyError::Stopped { done: outcome.done, total: outcome.total }.into());
     }
     Ok(Verdict::Yes)
+}
+
+fn begin(path: &Path, common: &Common) -> Result<Verdict, Failure> {
+    if path.exists() {
+        return Err(Failure::new(format!("{} is there already", path.display())));
+    }
+    write_file(path, TEMPLATE.as_bytes())?;
+    if common.json {
+        common.say_json(&json!({ "file": path }))?;
+    } else {
+        common.say(format!(
+            "{} is a study that runs as it stands; edit it, then: lierne study {} --check",
+            path.display(),
+            path.display()
+        ));
+    }
+    Ok(Verdict::Yes)
+}
+
+/// Multiply-adds a second that the forecast assumes of one core.
+const RATE: f64 = 4e9;
+
+fn price(file: &StudyFile, limits: &Limits, common: &Common) -> Result<Verdict, Failure> {
+    let prepared = run::prepare(file, common)?;
+    let forecasts = check::forecast(file, &prepared, limits, common)?;
+    common.clear();
+    let rate = RATE * common.threads as f64;
+    let seconds = |log10: Option<f64>| log10.map_or(0.0, |x| 10f64.powf(x) / rate);
+    if common.json {
+        let total: f64 = forecasts.iter().map(|f| seconds(f.log10_multiply_adds)).sum();
+        common.say_json(&json!({
+            "study": file.shown_name(),
+            "cases": forecasts,
+            "seconds_about": total,
+            "memory_bytes": limits.memory,
+        }))?;
+        return Ok(Verdict::Yes);
+    }
+    for f in &forecasts {
+        let mut parts = vec![format!("{} by geometry", f.geometry)];
+        if f.finite_field > 0 {
+            parts.push(format!("{} by finite field", f.finite_field));
+        }
+        if f.contraction > 0 {
+            parts.push(format!(
+                "{} by contraction: at most {} multiply-adds, about {}, {}",
+                f.contraction,
+                power(f.log10_multiply_adds.unwrap_or(0.0)),
+                duration(seconds(f.log10_multiply_adds)),
+                show_bytes(f.peak_bytes.unwrap_or(0) as f64)
+            ));
+        }
+        if f.beyond > 0 {
+            let dearest = f
+                .log10_dearest_beyond
+                .map_or_else(String::new, |x| format!(" (the dearest {} multiply-adds)", power(x)));
+            parts.push(format!(
+                "{} beyond the budget, to be bracketed by bounds{dearest}",
+                f.beyond
+            ));
+        }
+        common.say(format!(
+            "{}: {} tensors, {} boundary legs, {} regions: {}",
+            f.case,
+            f.tensors,
+            f.boundary,
+            f.regions,
+            parts.join(", ")
+        ));
+    }
+    common.say("The study is sound; run it with --out DIR.");
+    Ok(Verdict::Yes)
+}
+
+/// 10^12.4 as 2.5·10^12.
+fn power(log10: f64) -> String {
+    if log10 < 4.0 {
+        return format!("{:.0}", 10f64.powf(log10));
+    }
+    let e = log10.floor();
+    format!("{:.1}·10^{e:.0}", 10f64.powf(log10 - e))
+}
+
+fn duration(seconds: f64) -> String {
+    match seconds {
+        s if s < 1.0 => "less than a second".into(),
+        s if s < 120.0 => format!("{s:.0} s"),
+        s if s < 7200.0 => format!("{:.0} min", s / 60.0),
+        s if s < 172_800.0 => format!("{:.0} h", s / 3600.0),
+        s if s < 3.2e7 => format!("{:.0} days", s / 86_400.0),
+        s => format!("{:.0e} years", s / 3.156e7),
+    }
 }
 
 fn table(result: &StudyResult, common: &Common) {

@@ -10,13 +10,18 @@
 //! | Which networks does it mean? | [`case`] |
 //! | Which regions? | [`regions`] |
 //! | What is an answer? | [`answer`], [`row`] |
-//! | Which files come out? | [`result`], [`csv`], [`report`], [`provenance`] |
+//! | What would it cost? | [`check`] |
+//! | Which files come out? | [`result`], [`csv`], [`arrays`], [`figures`], [`report`], [`provenance`] |
+//! | How does a study file begin? | [`template`] |
 
 pub mod answer;
+pub mod arrays;
 pub mod ask;
 pub mod case;
+pub mod check;
 pub mod csv;
 mod error;
+pub mod figures;
 pub mod file;
 pub mod fit;
 mod folder;
@@ -30,6 +35,7 @@ pub mod report;
 pub mod result;
 pub mod row;
 pub mod run;
+pub mod template;
 mod write;
 
 pub use case::{Case, Setting};
@@ -39,4 +45,4 @@ pub use folder::Folder;
 pub use provenance::Provenance;
 pub use result::StudyResult;
 pub use run::{Limits, Outcome};
-pub use write::write_results;
+pub use write::{write_results, write_tables};

@@ -1,13 +1,18 @@
 //! The folder that a study leaves.
 
-use super::{Folder, Outcome, Provenance, StudyError, StudyFile, StudyResult, csv, report};
+use super::journal::Journal;
+use super::{
+    Folder, Outcome, Provenance, StudyError, StudyFile, StudyResult, arrays, csv, figures, report,
+};
+use std::fmt::Write;
 use std::path::Path;
 
-/// Writes every file of the folder, each whole or not at all.
+/// Writes the tables and the page, each whole or not at all: what can be read while a run
+/// goes on.
 ///
 /// # Errors
 /// [`StudyError::Write`].
-pub fn write_results(
+pub fn write_tables(
     path: &Path,
     file: &StudyFile,
     outcome: &Outcome,
@@ -23,6 +28,95 @@ pub fn write_results(
     folder.write("provenance.json", &json(provenance))?;
     folder.write("report.html", report::page(&result, outcome, provenance).as_bytes())?;
     Ok(result)
+}
+
+/// Writes every file of the folder, each whole or not at all. Also returned: what could not
+/// be drawn, in sentences.
+///
+/// # Errors
+/// [`StudyError::Write`].
+pub fn write_results(
+    path: &Path,
+    file: &StudyFile,
+    outcome: &Outcome,
+    provenance: &Provenance,
+) -> Result<(StudyResult, Vec<String>), StudyError> {
+    let result = write_tables(path, file, outcome, provenance)?;
+    let folder = Folder::open(path)?;
+    folder.write("study.toml", file.text.as_bytes())?;
+    if file.output.arrays {
+        arrays::write(&folder, outcome, &result)?;
+    }
+    let mut left_out = Vec::new();
+    if file.output.figures {
+        left_out = figures::write(&folder, outcome, &result)?;
+    }
+    folder.write("README.txt", readme(file, &result, provenance).as_bytes())?;
+    Ok((result, left_out))
+}
+
+/// What the folder holds, for whoever finds it.
+fn readme(file: &StudyFile, result: &StudyResult, provenance: &Provenance) -> String {
+    let mut out = String::new();
+    let _ = writeln!(out, "{}\n", result.name);
+    if !result.about.is_empty() {
+        let _ = writeln!(out, "{}\n", result.about);
+    }
+    let _ = writeln!(
+        out,
+        "Written by lierne {} from {} ({} of {} answers), seed {}:\n\n    {}\n",
+        result.version,
+        provenance.study_file,
+        result.answered,
+        result.asked,
+        result.seed,
+        provenance.command
+    );
+    let rows: Vec<(&str, bool, &str)> = vec![
+        ("report.html", true, "the page to begin with; opens from disk in any browser"),
+        (
+            "result.json",
+            true,
+            "everything, with the evidence of every number; the same study, seed and version give the same bytes",
+        ),
+        (
+            "entropies.csv",
+            file.output.csv,
+            "one region a row; units are in the names of the columns",
+        ),
+        ("by_length.csv", file.output.csv, "means over the intervals of each length"),
+        (
+            "entropies.npz",
+            file.output.arrays,
+            "for numpy.load: intervals_k (rows: length from 1, columns: first site), regions_k, regions_k_nats, regions_k_bounds for case k of result.json",
+        ),
+        (
+            "spectra.npz",
+            file.output.arrays && file.entropies.as_ref().is_some_and(|e| e.spectra),
+            "spectrum_k_r for region r of case k: eigenvalue and multiplicity",
+        ),
+        ("figures/", file.output.figures, "the figures as SVG and PNG"),
+        ("study.toml", true, "the study as it was asked"),
+        ("provenance.json", true, "version, command, seed, machine, times"),
+        (
+            Journal::NAME,
+            true,
+            "finished answers; the same command goes on from them, and they may be deleted",
+        ),
+    ];
+    for (name, there, what) in rows {
+        if there {
+            let _ = writeln!(out, "{name:<16} {what}");
+        }
+    }
+    out.push_str(
+        "\nEntropies are in nats; in legs they are divided by log D, D being the dimension of the \
+         boundary legs.\nBoundary sites count from 0, counter-clockwise; 3..6 means 3, 4, 5 and \
+         18..2 wraps past the last site.\nEvidence: geometry and finite-field are exact; \
+         contraction has the numerical error given; bounds are a\nproven lower and upper bound \
+         where the exact answer was beyond the budget.\n",
+    );
+    out
 }
 
 fn json(value: &impl serde::Serialize) -> Vec<u8> {
