@@ -1,14 +1,16 @@
 //! Pictures: what should be drawn is drawn, files are well-formed and small.
 
 mod picture {
+    pub mod families;
     pub mod patch;
 }
 
 use lierne::network::Region;
 use lierne::study::picture::{
-    Axis, Chart, Look, Marks, Options, Point, Scene, Series, Share, histogram,
+    Axis, Chart, Look, Marks, Options, Point, Reach, Scene, Series, Share, histogram,
 };
-use picture::patch;
+use lierne::tensor::Label;
+use picture::{families, patch};
 
 /// Writes a few pictures to look at.
 #[test]
@@ -43,6 +45,42 @@ fn look() {
             };
             let picture = scene.draw().unwrap();
             let file = format!("{folder}/tiling-{p}-{q}-{rings}-{kind}.svg");
+            println!("{file}: {} bytes, {:?}", picture.svg.len(), picture.drawn);
+            std::fs::write(file, picture.svg).unwrap();
+        }
+    }
+    for network in families::all() {
+        let n = network.boundary().len();
+        let shares: Vec<Share> = network
+            .tensor_ids()
+            .map(|t| match 3 * t.index() / network.tensors() {
+                0 => Share::Region,
+                1 => Share::Core,
+                _ => Share::Rest,
+            })
+            .collect();
+        let cut = (0..network.labels() as u32)
+            .map(Label::new)
+            .filter(|&l| match network.holders(l) {
+                [a, b] => {
+                    (shares[a.index()] == Share::Region) != (shares[b.index()] == Share::Region)
+                }
+                _ => false,
+            })
+            .collect();
+        let bulk = network
+            .bulk()
+            .iter()
+            .zip([Reach::Region, Reach::Rest, Reach::Nobody].into_iter().cycle())
+            .map(|(&l, r)| (l, r))
+            .collect();
+        let marks = Marks { region: Some(Region::interval(0, n / 3, n)), cut, shares, bulk };
+        let file = format!("{folder}/{}.svg", network.name().replace([' ', ','], "-"));
+        for (file, marks) in [(file.replace(".svg", "-plain.svg"), Marks::default()), (file, marks)]
+        {
+            let options =
+                Options { names: true, title: Some(network.name().into()), ..Options::default() };
+            let picture = Scene { network: &network, marks, options }.draw().unwrap();
             println!("{file}: {} bytes, {:?}", picture.svg.len(), picture.drawn);
             std::fs::write(file, picture.svg).unwrap();
         }

@@ -7,6 +7,7 @@ use super::scene::{Drawn, Picture, Scene, SitePlace};
 use super::sheet::{Layer, Sheet, What};
 use super::text;
 use crate::network::TensorId;
+use std::collections::BTreeMap;
 
 /// Width of every drawing in its own units; a tenth of a millimetre each at one column.
 pub(super) const WIDTH: f64 = 850.0;
@@ -26,6 +27,8 @@ pub(super) struct Canvas {
     pub(super) tensors: Vec<Option<[f64; 2]>>,
     pub(super) disk: Option<([f64; 2], f64)>,
     pub(super) drawn: Drawn,
+    /// Numbers of bonds that join two patches, by label.
+    pub(super) seams: BTreeMap<usize, usize>,
     /// First line below the title.
     pub(super) top: f64,
     /// Where the drawing proper ends; the legend begins there.
@@ -52,6 +55,7 @@ impl Canvas {
             tensors: vec![None; scene.network.tensors()],
             disk: None,
             drawn: Drawn::default(),
+            seams: BTreeMap::new(),
             top,
             bottom: top,
             variants: variants(scene),
@@ -188,7 +192,7 @@ impl Canvas {
     fn legend(&mut self, scene: &Scene<'_>) {
         let marks = &scene.marks;
         let mut entries: Vec<(Sign, &str)> = Vec::new();
-        if marks.region.is_some() {
+        if marks.region.as_ref().is_some_and(|r| r.sites() > 0) {
             entries.push((Sign::Shape(Layer::Site, "site region"), "region A"));
         }
         if !marks.cut.is_empty() {
@@ -280,20 +284,27 @@ enum Sign {
     Bulk(Reach),
 }
 
-/// Which look each block gets: the commonest the first, ties in the order of blocks.
+/// Which look each block gets, by its name: the commonest the first, ties in the order of
+/// blocks.
 fn variants(scene: &Scene<'_>) -> Vec<usize> {
     let network = scene.network;
-    let mut uses = vec![0usize; network.blocks().len()];
+    let mut kind: Vec<usize> = Vec::new();
+    let mut names: BTreeMap<&str, usize> = BTreeMap::new();
+    for block in network.blocks() {
+        let next = names.len();
+        kind.push(*names.entry(block.name()).or_insert(next));
+    }
+    let mut uses = vec![0usize; names.len()];
     for t in network.tensor_ids() {
-        uses[network.block_number(t)] += 1;
+        uses[kind[network.block_number(t)]] += 1;
     }
     let mut order: Vec<usize> = (0..uses.len()).collect();
-    order.sort_by_key(|&b| std::cmp::Reverse(uses[b]));
+    order.sort_by_key(|&k| std::cmp::Reverse(uses[k]));
     let mut rank = vec![0; uses.len()];
-    for (place, b) in order.into_iter().enumerate() {
-        rank[b] = place;
+    for (place, k) in order.into_iter().enumerate() {
+        rank[k] = place;
     }
-    rank
+    kind.into_iter().map(|k| rank[k]).collect()
 }
 
 /// A star with a point along each of `looks` and waists between; a lozenge for fewer than
@@ -317,7 +328,13 @@ fn star(path: &mut Path, at: [f64; 2], reach: f64, looks: &[[f64; 2]]) {
     let n = angles.len();
     path.move_to(point(angles[0], reach));
     for k in 0..n {
-        let (a, b) = (angles[k], if k + 1 < n { angles[k + 1] } else { angles[0] + tau });
+        let (mut a, b) = (angles[k], if k + 1 < n { angles[k + 1] } else { angles[0] + tau });
+        if b - a > 2.4 {
+            // A short point where no leg leaves keeps the star round its middle.
+            let m = f64::midpoint(a, b);
+            path.bend_to(point(f64::midpoint(a, m), reach * 0.36), point(m, reach * 0.6));
+            a = m;
+        }
         let waist = reach * (0.34 + 0.16 * (1.0 - ((b - a) / 2.0).cos().abs()));
         path.bend_to(point(f64::midpoint(a, b), waist * 0.75), point(b, reach));
     }

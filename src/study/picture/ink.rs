@@ -75,6 +75,9 @@ const WALL: [f64; 7] = [0.3, 0.4, 0.6, 0.8, 1.0, 1.2, 1.4];
 pub(super) const MOULD: [f64; 7] = [0.0, 0.0, 0.0, 0.0, 1.3, 2.2, 3.2];
 const CUT: [f64; 7] = [1.6, 2.2, 3.0, 4.2, 5.6, 7.0, 8.0];
 
+/// Bands under bonds whose two tensors have one share.
+const POD: [f64; 7] = [1.0, 1.8, 3.4, 7.0, 14.0, 27.0, 40.0];
+
 /// Font size of all text in a drawing: 6 pt where the drawing is 85 mm wide.
 pub const TEXT: f64 = 21.5;
 
@@ -111,6 +114,9 @@ pub(super) fn style(ink: Ink, root: &str, id: &str) -> String {
     rule(".pod.a", format!("fill:none;stroke:url(#{id}ha)"));
     rule(".pod.b", format!("fill:none;stroke:url(#{id}hb)"));
     rule(".wall", format!("stroke:{}", t("wall")));
+    for (k, width) in POD.iter().enumerate() {
+        rule(&format!(".pod.k{k}"), format!("stroke-width:{width}"));
+    }
     rule(".gate", "stroke:none".into());
     rule(".rib", format!("stroke:{}", t("ink")));
     rule(".mould", format!("stroke:{}", t("paper")));

@@ -12,21 +12,32 @@
 
 mod canvas;
 mod chart;
+mod cut_curve;
+mod draw_disk;
+mod draw_free;
 mod draw_graph;
 mod draw_tiles;
 mod error;
+mod faces;
+mod free_frame;
 mod geometry;
+mod graph;
 mod ink;
 mod marks;
 mod pen;
+mod placement;
+mod raster;
 mod rim;
 mod scene;
 mod sheet;
+mod stones;
 mod text;
+mod tile_sites;
 mod tiles;
 
 pub use chart::{Axis, Chart, Look, Point, Scale, Series, histogram};
 pub use error::PictureError;
 pub use ink::{Ink, TEXT, theme_css};
 pub use marks::{Address, Marks, Options, Reach, Share};
+pub use raster::{MOST_PIXELS, png};
 pub use scene::{Drawn, MOST_TENSORS, Picture, Scene, SitePlace};

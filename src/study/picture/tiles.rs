@@ -2,7 +2,9 @@
 //! through which side. Everything follows from the places of the tiles' centres.
 
 use super::geometry::Plane;
-use crate::network::{Network, TensorId};
+use crate::network::{Network, TensorId, tile_frames};
+use crate::tiling::Curvature;
+use crate::tiling::geometry::Frame;
 use num_complex::Complex64;
 use std::f64::consts::TAU;
 
@@ -21,6 +23,9 @@ pub(super) struct Tiles {
     pub(super) plane: Plane,
     pub(super) p: usize,
     pub(super) tiles: Vec<Option<Tile>>,
+    /// Which of several glued patches each tensor belongs to; each lies in a plane of its own.
+    pub(super) sheet: Vec<u32>,
+    pub(super) sheets: usize,
     /// Which leg of a tensor leaves through each of its tile's sides; `u32::MAX` for none.
     doors: Vec<u32>,
     middle: f64,
@@ -30,22 +35,46 @@ pub(super) struct Tiles {
 const NONE: u32 = u32::MAX;
 
 impl Tiles {
-    /// The tiles of a network that tells its tiling and its places; `None` where what it
-    /// tells does not fit together (other polygons among the tiles, say).
+    /// The tiles of a network that tells its tiling; `None` where what it tells does not fit
+    /// together (other polygons among the tiles, say).
     pub(super) fn of(network: &Network) -> Option<Self> {
         let layout = network.layout()?;
         let (p, q) = layout.tiling?;
-        if layout.place.is_empty() || p < 3 || q < 3 {
+        if p < 3 || q < 3 {
             return None;
         }
         let plane = Plane::of(p, q);
         let n = network.tensors();
-        let place: Vec<Option<Complex64>> = (0..n)
-            .map(|t| layout.place.get(t).map(|z| Complex64::new(z[0], z[1])))
-            .map(|z| z.filter(|z| z.re.is_finite() && z.im.is_finite() && z.norm() < 1e6))
+        let sheet: Vec<u32> = network.tensor_ids().map(|t| layout.sheet_of(t)).collect();
+        let mut frames = tile_frames(network)?.1;
+        if plane == Plane::Spherical {
+            turn_sphere(&mut frames, p, q);
+        }
+        let told: Vec<Option<(Complex64, f64)>> = frames
+            .iter()
+            .map(|f| f.as_ref().map(|f| (f.place(), f.angle())))
+            .map(|f| f.map(|(z, angle)| (Complex64::new(z[0], z[1]), angle)))
             .collect();
+        let framed = told.iter().any(Option::is_some);
+        let sound = |z: &Complex64| {
+            z.re.is_finite()
+                && z.im.is_finite()
+                && z.norm() < 1e6
+                && (plane != Plane::Hyperbolic || z.norm_sqr() < 1.0)
+        };
+        let place: Vec<Option<Complex64>> = (0..n)
+            .map(|t| match told[t] {
+                Some((z, _)) => Some(z),
+                None if framed => None,
+                None => layout.place.get(t).map(|z| Complex64::new(z[0], z[1])),
+            })
+            .map(|z| z.filter(sound))
+            .collect();
+        if place.iter().all(Option::is_none) {
+            return None;
+        }
         let half = match plane {
-            Plane::Euclidean => half_step(network, &place)?,
+            Plane::Euclidean => half_step(network, &place, &sheet)?,
             _ => 0.0,
         };
         let mut boundary = vec![false; network.labels()];
@@ -58,14 +87,20 @@ impl Tiles {
         let mut doors = vec![NONE; n * p];
         for t in 0..n {
             let Some(centre) = place[t] else { continue };
-            if plane == Plane::Hyperbolic && centre.norm_sqr() >= 1.0 {
-                continue;
-            }
             let door = &mut doors[t * p..(t + 1) * p];
-            let turn = orient(network, t, plane, &place, &boundary, door)?;
+            let turn = if let Some((_, angle)) = told[t] {
+                if network.legs(TensorId::new(t as u32)).len() < p {
+                    return None;
+                }
+                door.iter_mut().enumerate().for_each(|(s, d)| *d = s as u32);
+                Complex64::from_polar(1.0, angle)
+            } else {
+                orient(network, t, plane, &place, &boundary, door)?
+            };
             tiles[t] = Some(Tile { centre, turn, scale: plane.scale(centre) });
         }
-        let made = Self { plane, p, tiles, doors, middle, corner };
+        let sheets = sheet.iter().max().map_or(1, |&s| s as usize + 1);
+        let made = Self { plane, p, tiles, sheet, sheets, doors, middle, corner };
         made.fits(network).then_some(made)
     }
     /// Whether neighbours agree on the wall between them.
@@ -76,6 +111,9 @@ impl Tiles {
                 let Some(leg) = self.leg(t, s) else { return true };
                 let label = network.legs(TensorId::new(t as u32))[leg];
                 let Some(u) = other(network, label, t) else { return true };
+                if self.sheet[u] != self.sheet[t] || tile.scale < 1e-4 {
+                    return true;
+                }
                 let (Some(them), Some(theirs)) =
                     (self.tiles[u], self.side_of(network, u, label, t))
                 else {
@@ -145,6 +183,23 @@ impl Tiles {
     }
 }
 
+/// Turns a sphere on which a tile lies at the pole that the projection sends to infinity, so
+/// that the pole comes to lie inside that tile, near a corner.
+fn turn_sphere(frames: &mut [Option<Frame>], p: u32, q: u32) {
+    let lost = |f: &Frame| f.place().iter().any(|x| !x.is_finite() || x.abs() > 50.0);
+    if !frames.iter().flatten().any(lost) {
+        return;
+    }
+    let curvature = Curvature::Spherical;
+    let (_, corner) = Plane::Spherical.tile(p, q, 0.0);
+    // Off every axis of symmetry, or two bonds would lie on one line through the pole.
+    let way = Frame::turn(curvature, std::f64::consts::PI / f64::from(p) - 0.4)
+        .after(&Frame::shift(curvature, corner * 0.7));
+    for frame in frames.iter_mut().flatten() {
+        *frame = way.after(frame);
+    }
+}
+
 /// The other tensor that holds a label, where there are exactly two holders.
 pub(super) fn other(network: &Network, label: crate::tensor::Label, t: usize) -> Option<usize> {
     match network.holders(label) {
@@ -155,11 +210,12 @@ pub(super) fn other(network: &Network, label: crate::tensor::Label, t: usize) ->
 }
 
 /// Half the distance of the first two neighbours found.
-fn half_step(network: &Network, place: &[Option<Complex64>]) -> Option<f64> {
+fn half_step(network: &Network, place: &[Option<Complex64>], sheet: &[u32]) -> Option<f64> {
     for t in network.tensor_ids() {
         let Some(here) = place[t.index()] else { continue };
         for &l in network.legs(t) {
-            if let Some(there) = other(network, l, t.index()).and_then(|u| place[u]) {
+            let across = other(network, l, t.index()).filter(|&u| sheet[u] == sheet[t.index()]);
+            if let Some(there) = across.and_then(|u| place[u]) {
                 let d = (there - here).norm();
                 if d > 0.0 {
                     return Some(d / 2.0);
