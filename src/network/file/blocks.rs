@@ -77,7 +77,7 @@ impl BlockShelf {
                 let name = format!("values of {}", tensor());
                 block::from_dense(name, dense(values, dims), TOLERANCE)
                     .map(Arc::new)
-                    .map_err(|reason| Problem::Block { tensor: tensor(), reason })
+                    .map_err(|reason| Problem::Block { tensor: tensor(), reason: Box::new(reason) })
             }
         }
     }
@@ -98,8 +98,8 @@ impl BlockShelf {
             options: named.options.clone(),
             seed: named.seed,
         };
-        let block =
-            block::make(&request).map_err(|reason| Problem::Block { tensor: tensor(), reason })?;
+        let block = block::make(&request)
+            .map_err(|reason| Problem::Block { tensor: tensor(), reason: Box::new(reason) })?;
         let block = Arc::new(block);
         self.named.insert(key, Arc::clone(&block));
         Ok(block)
@@ -148,10 +148,12 @@ impl BlockShelf {
         let numbers = block::read_npy(&path).map_err(|reason| Problem::ArrayFile {
             file: file.to_owned(),
             tensor: tensor(),
-            reason,
+            reason: Box::new(reason),
         })?;
-        let block = block::from_dense(format!("array {file}"), numbers, TOLERANCE)
-            .map_err(|reason| Problem::Array { file: file.to_owned(), tensor: tensor(), reason })?;
+        let block =
+            block::from_dense(format!("array {file}"), numbers, TOLERANCE).map_err(|reason| {
+                Problem::Array { file: file.to_owned(), tensor: tensor(), reason: Box::new(reason) }
+            })?;
         let block = Arc::new(block);
         self.arrays.insert(file.to_owned(), Arc::clone(&block));
         Ok(block)

@@ -16,7 +16,7 @@ pub struct FileError {
     pub line: Option<usize>,
     /// What is wrong.
     #[source]
-    pub problem: Problem,
+    pub problem: Box<Problem>,
 }
 
 /// What is wrong with a network file or recipe.
@@ -224,7 +224,7 @@ pub enum Problem {
         tensor: String,
         /// Why not.
         #[source]
-        reason: NpyError,
+        reason: Box<NpyError>,
     },
     /// An array that cannot serve as a tensor.
     #[error("array {file:?} of tensor {tensor:?}: {reason}")]
@@ -235,7 +235,7 @@ pub enum Problem {
         tensor: String,
         /// Why not.
         #[source]
-        reason: BlockError,
+        reason: Box<BlockError>,
     },
     /// An array of the wrong shape.
     #[error(
@@ -258,7 +258,7 @@ pub enum Problem {
         tensor: String,
         /// Why not.
         #[source]
-        reason: BlockError,
+        reason: Box<BlockError>,
     },
     /// More of something than the limit.
     #[error("the network has {count} {what}; at most {limit} are taken")]
@@ -305,6 +305,6 @@ pub enum Problem {
 impl Problem {
     /// The problem with its file.
     pub(in crate::network) fn at(self, path: &std::path::Path, line: Option<usize>) -> FileError {
-        FileError { path: path.to_path_buf(), line, problem: self }
+        FileError { path: path.to_path_buf(), line, problem: Box::new(self) }
     }
 }
