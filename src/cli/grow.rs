@@ -3,7 +3,9 @@
 use super::common::write_file;
 use super::{Common, Failure, Verdict, show};
 use crate::network::{
-    Format, Limits, NamedBlock, Recipe, Selection, TilingRecipe, Turns, save, to_bytes,
+    ChainRecipe, CompleteRecipe, Format, GeometricRecipe, LatticeKind, LatticeOpen, LatticeRecipe,
+    LayeredKind, LayeredRecipe, LayeredTop, Limits, NamedBlock, Network, Recipe, RegularRecipe,
+    RootLeg, Selection, TilingRecipe, TreeRecipe, Turns, WormholeRecipe, save, to_bytes,
 };
 use crate::tiling::{Centre, Growth, Rule, Tiling};
 use clap::{Subcommand, ValueEnum};
@@ -20,6 +22,22 @@ pub struct Args {
 enum Family {
     /// A patch of a regular tiling {p,q}, ring by ring, one tensor a tile
     Tiling(TilingArgs),
+    /// Two equal patches of a tiling, each with a hole, glued along the rims of the holes
+    Wormhole(WormholeArgs),
+    /// A square, cubic, hexagonal or triangular lattice, open or periodic
+    Lattice(LatticeArgs),
+    /// A complete tree in which every tensor has k children
+    Tree(TreeArgs),
+    /// A layered isometric network, binary or ternary
+    Layered(LayeredArgs),
+    /// A chain of tensors, one a site
+    Chain(ChainArgs),
+    /// A random regular graph
+    Regular(RegularArgs),
+    /// A random geometric graph
+    Geometric(GeometricArgs),
+    /// A complete graph
+    Complete(CompleteArgs),
 }
 
 #[derive(Debug, clap::Args)]
@@ -101,13 +119,321 @@ struct TilingArgs {
     output: Output,
 }
 
+#[derive(Debug, clap::Args)]
+struct WormholeArgs {
+    #[command(flatten)]
+    patch: TilingArgs,
+    /// By how many sides the second rim is turned against the first
+    #[arg(long, value_name = "K", default_value_t = 0)]
+    twist: u64,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum LatticeWord {
+    Square,
+    Cubic,
+    Hexagonal,
+    Triangular,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum OpenWord {
+    /// The legs that stick out at the rim
+    Rim,
+    /// One leg more on every site
+    Sites,
+    /// None
+    None,
+}
+
+#[derive(Debug, clap::Args)]
+struct LatticeArgs {
+    /// Which lattice
+    #[arg(long, value_enum, default_value = "square")]
+    kind: LatticeWord,
+    /// Cells in each direction, as 4,4 or 3,3,3
+    #[arg(long, value_name = "N,N", value_delimiter = ',', required = true)]
+    size: Vec<u64>,
+    /// Close every direction into a circle
+    #[arg(long)]
+    periodic: bool,
+    /// Which legs stay open
+    #[arg(long, value_enum, default_value = "rim")]
+    open: OpenWord,
+    /// Block of every site; without it the perfect block with as many legs as needed
+    #[arg(long, value_name = "NAME")]
+    block: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum RootWord {
+    /// The root has no leg upwards
+    None,
+    /// The root's leg upwards is boundary site 0
+    Boundary,
+    /// The root's leg upwards is a bulk leg
+    Bulk,
+}
+
+#[derive(Debug, clap::Args)]
+struct TreeArgs {
+    /// Children of every tensor
+    #[arg(long, value_name = "K")]
+    arity: u64,
+    /// Generations beside the root
+    #[arg(long, value_name = "N")]
+    depth: u64,
+    /// What becomes of the leg by which the root would have a parent
+    #[arg(long, value_enum, default_value = "none")]
+    root: RootWord,
+    /// Block of every tensor; without it the perfect block with as many legs as needed
+    #[arg(long, value_name = "NAME")]
+    block: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum LayeredWord {
+    /// Two sites become one
+    Binary,
+    /// Three sites become one
+    Ternary,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum CloseWord {
+    /// One tensor closes the legs on top
+    Tensor,
+    /// The legs on top are bulk legs
+    Bulk,
+}
+
+#[derive(Debug, clap::Args)]
+struct LayeredArgs {
+    /// How many sites become one
+    #[arg(long, value_enum, default_value = "binary")]
+    kind: LayeredWord,
+    /// Layers
+    #[arg(long, value_name = "N")]
+    layers: u64,
+    /// Sites left after the last layer
+    #[arg(long, value_name = "N", default_value_t = 2)]
+    top: u64,
+    /// What closes them
+    #[arg(long, value_enum, default_value = "tensor")]
+    close: CloseWord,
+    /// The last site does not neighbour the first
+    #[arg(long)]
+    open_ended: bool,
+    /// The two-site tensors; without it the perfect four-leg block
+    #[arg(long, value_name = "NAME")]
+    turn: Option<String>,
+    /// The tensors that make one site of several; without it perfect blocks
+    #[arg(long, value_name = "NAME")]
+    merge: Option<String>,
+    /// The tensor on top; without it a perfect block
+    #[arg(long, value_name = "NAME")]
+    cap: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
+#[derive(Debug, clap::Args)]
+struct ChainArgs {
+    /// Sites
+    #[arg(long, value_name = "N")]
+    length: u64,
+    /// Join the last site to the first
+    #[arg(long)]
+    periodic: bool,
+    /// Dimension of the bonds, where it is not that of every leg
+    #[arg(long, value_name = "D")]
+    bond_dimension: Option<usize>,
+    /// Block of every tensor; without it random numbers
+    #[arg(long, value_name = "NAME")]
+    block: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
+#[derive(Debug, clap::Args)]
+struct GraphOptions {
+    /// Give every tensor an open leg, too
+    #[arg(long)]
+    open: bool,
+    /// Block of every tensor; without it random numbers
+    #[arg(long, value_name = "NAME")]
+    block: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
+#[derive(Debug, clap::Args)]
+struct RegularArgs {
+    /// Vertices
+    #[arg(long, value_name = "N")]
+    vertices: u64,
+    /// Neighbours of each
+    #[arg(long, value_name = "D")]
+    degree: u64,
+    /// Seed
+    #[arg(long, value_name = "S", default_value_t = 0)]
+    seed: u64,
+    #[command(flatten)]
+    graph: GraphOptions,
+}
+
+#[derive(Debug, clap::Args)]
+struct GeometricArgs {
+    /// Vertices
+    #[arg(long, value_name = "N")]
+    vertices: u64,
+    /// Neighbours of a vertex in the mean, far from the edges
+    #[arg(long, value_name = "X")]
+    mean_degree: f64,
+    /// Opposite edges of the square are one
+    #[arg(long)]
+    periodic: bool,
+    /// Seed
+    #[arg(long, value_name = "S", default_value_t = 0)]
+    seed: u64,
+    #[command(flatten)]
+    graph: GraphOptions,
+}
+
+#[derive(Debug, clap::Args)]
+struct CompleteArgs {
+    /// Vertices
+    #[arg(long, value_name = "N")]
+    vertices: u64,
+    #[command(flatten)]
+    graph: GraphOptions,
+}
+
 /// Runs the command.
 ///
 /// # Errors
 /// A sentence on what cannot be grown or written.
 pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
-    match &args.family {
-        Family::Tiling(a) => deliver(&Recipe::Tiling(a.recipe()?), &a.output, common),
+    let (recipe, output) = match &args.family {
+        Family::Tiling(a) => (Recipe::Tiling(a.recipe()?), &a.output),
+        Family::Wormhole(a) => {
+            let one = a.patch.recipe()?;
+            let recipe = WormholeRecipe { other: one.clone(), one, twist: a.twist };
+            (Recipe::Wormhole(recipe), &a.patch.output)
+        }
+        Family::Lattice(a) => (Recipe::Lattice(a.recipe()), &a.output),
+        Family::Tree(a) => (Recipe::Tree(a.recipe()), &a.output),
+        Family::Layered(a) => (Recipe::Layered(a.recipe()), &a.output),
+        Family::Chain(a) => {
+            let recipe = ChainRecipe {
+                length: a.length,
+                periodic: a.periodic,
+                bond_dimension: a.bond_dimension,
+                block: named(a.block.as_ref()),
+            };
+            (Recipe::Chain(recipe), &a.output)
+        }
+        Family::Regular(a) => {
+            let recipe = RegularRecipe {
+                vertices: a.vertices,
+                degree: a.degree,
+                seed: a.seed,
+                open: a.graph.open,
+                block: named(a.graph.block.as_ref()),
+            };
+            (Recipe::Regular(recipe), &a.graph.output)
+        }
+        Family::Geometric(a) => {
+            if !(a.mean_degree > 0.0 && a.mean_degree.is_finite()) {
+                return Err(Failure::new(format!(
+                    "--mean-degree is {}; a positive number is taken",
+                    a.mean_degree
+                )));
+            }
+            let recipe = GeometricRecipe {
+                vertices: a.vertices,
+                mean_degree: a.mean_degree,
+                seed: a.seed,
+                periodic: a.periodic,
+                open: a.graph.open,
+                block: named(a.graph.block.as_ref()),
+            };
+            (Recipe::Geometric(recipe), &a.graph.output)
+        }
+        Family::Complete(a) => {
+            let recipe = CompleteRecipe {
+                vertices: a.vertices,
+                open: a.graph.open,
+                block: named(a.graph.block.as_ref()),
+            };
+            (Recipe::Complete(recipe), &a.graph.output)
+        }
+    };
+    deliver(&recipe, output, common)
+}
+
+fn named(family: Option<&String>) -> Option<NamedBlock> {
+    family.map(NamedBlock::family)
+}
+
+impl LatticeArgs {
+    fn recipe(&self) -> LatticeRecipe {
+        LatticeRecipe {
+            kind: match self.kind {
+                LatticeWord::Square => LatticeKind::Square,
+                LatticeWord::Cubic => LatticeKind::Cubic,
+                LatticeWord::Hexagonal => LatticeKind::Hexagonal,
+                LatticeWord::Triangular => LatticeKind::Triangular,
+            },
+            size: self.size.clone(),
+            periodic: vec![self.periodic],
+            open: match self.open {
+                OpenWord::Rim => LatticeOpen::Rim,
+                OpenWord::Sites => LatticeOpen::Sites,
+                OpenWord::None => LatticeOpen::None,
+            },
+            block: named(self.block.as_ref()),
+        }
+    }
+}
+
+impl TreeArgs {
+    fn recipe(&self) -> TreeRecipe {
+        TreeRecipe {
+            arity: self.arity,
+            depth: self.depth,
+            root: match self.root {
+                RootWord::None => RootLeg::None,
+                RootWord::Boundary => RootLeg::Boundary,
+                RootWord::Bulk => RootLeg::Bulk,
+            },
+            block: named(self.block.as_ref()),
+        }
+    }
+}
+
+impl LayeredArgs {
+    fn recipe(&self) -> LayeredRecipe {
+        LayeredRecipe {
+            kind: match self.kind {
+                LayeredWord::Binary => LayeredKind::Binary,
+                LayeredWord::Ternary => LayeredKind::Ternary,
+            },
+            layers: self.layers,
+            top: self.top,
+            close: match self.close {
+                CloseWord::Tensor => LayeredTop::Tensor,
+                CloseWord::Bulk => LayeredTop::Bulk,
+            },
+            periodic: !self.open_ended,
+            turn: named(self.turn.as_ref()),
+            merge: named(self.merge.as_ref()),
+            cap: named(self.cap.as_ref()),
+        }
     }
 }
 
@@ -155,37 +481,47 @@ impl TilingArgs {
 
 fn deliver(recipe: &Recipe, output: &Output, common: &Common) -> Result<Verdict, Failure> {
     let limits = Limits { tensors: output.most_tensors, ..Limits::default() };
-    let name = match (&output.name, &output.out) {
-        (Some(name), _) => name.clone(),
-        (None, Some(path)) => {
-            path.file_stem().map(|s| s.to_string_lossy().into_owned()).unwrap_or_default()
-        }
-        (None, None) => recipe.to_table().0.to_owned(),
-    };
+    let name = output.name_or(recipe.to_table().0);
     // The network is made in any case: a recipe that cannot be made is not written.
     let network = recipe.network(&name, Some(output.dimension as usize), &limits)?;
+    if !output.recipe {
+        return deliver_network(&network, output, common);
+    }
+    let Some(path) = &output.out else {
+        let format = if common.json { Format::Json } else { Format::Toml };
+        common.say(recipe_text(recipe, &name, output.dimension, format)?.trim_end());
+        return Ok(Verdict::Yes);
+    };
+    let text = recipe_text(recipe, &name, output.dimension, format_of(path)?)?;
+    write_file(path, text.as_bytes())?;
+    show::tell(&network, common)?;
+    Ok(Verdict::Yes)
+}
+
+fn deliver_network(
+    network: &Network,
+    output: &Output,
+    common: &Common,
+) -> Result<Verdict, Failure> {
     match &output.out {
         None => {
             let format = if common.json { Format::Json } else { Format::Toml };
-            let bytes = if output.recipe {
-                recipe_text(recipe, &name, output.dimension, format)?.into_bytes()
-            } else {
-                to_bytes(&network, format)?
-            };
-            common.say(String::from_utf8_lossy(&bytes).trim_end());
+            common.say(String::from_utf8_lossy(&to_bytes(network, format)?).trim_end());
         }
         Some(path) => {
-            if output.recipe {
-                let format = format_of(path)?;
-                let text = recipe_text(recipe, &name, output.dimension, format)?;
-                write_file(path, text.as_bytes())?;
-            } else {
-                save(&network, path)?;
-            }
-            show::tell(&network, common)?;
+            save(network, path)?;
+            show::tell(network, common)?;
         }
     }
     Ok(Verdict::Yes)
+}
+
+impl Output {
+    /// The name given, or else that of the file, or else that of the family.
+    fn name_or(&self, family: &str) -> String {
+        let stem = || Some(self.out.as_ref()?.file_stem()?.to_string_lossy().into_owned());
+        self.name.clone().or_else(stem).unwrap_or_else(|| family.to_owned())
+    }
 }
 
 fn format_of(path: &Path) -> Result<Format, Failure> {

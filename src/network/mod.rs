@@ -6,6 +6,7 @@
 mod build;
 mod file;
 mod frames;
+pub mod graph;
 mod ids;
 mod intern;
 mod limits;
@@ -19,7 +20,11 @@ pub use file::{FileError, Format, Problem, from_toml, load, load_with, nearest, 
 pub use frames::tile_frames;
 pub use ids::{BoundarySite, TensorId};
 pub use limits::{Limits, Overrides};
-pub use recipe::{Recipe, Selection, TileRule, TilingRecipe, Turns};
+pub use recipe::{
+    ChainRecipe, CompleteRecipe, GeometricRecipe, LatticeKind, LatticeOpen, LatticeRecipe,
+    LayeredKind, LayeredRecipe, LayeredTop, Recipe, RegularRecipe, RootLeg, Selection, TileRule,
+    TilingRecipe, TreeRecipe, Turns, WormholeRecipe,
+};
 pub use region::{Region, RegionError};
 pub use source::{BlockSource, NamedBlock};
 pub use the_network::{Layout, Network};

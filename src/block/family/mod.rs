@@ -11,6 +11,7 @@ mod mds;
 mod one_leg;
 mod perfect;
 mod perfect_parts;
+mod random_tensor;
 mod random_unitary;
 mod repetition;
 mod six_level;
@@ -31,6 +32,8 @@ pub enum Legs {
     Between(usize, usize),
     /// An even number from 2 to 20.
     Even,
+    /// Any number.
+    Any,
 }
 
 impl Legs {
@@ -40,6 +43,7 @@ impl Legs {
             Legs::AtLeast(n) => (n..=20).contains(&legs),
             Legs::Between(a, b) => (a..=b).contains(&legs),
             Legs::Even => legs >= 2 && legs.is_multiple_of(2) && legs <= 20,
+            Legs::Any => true,
         }
     }
 }
@@ -51,6 +55,7 @@ impl fmt::Display for Legs {
             Legs::AtLeast(n) => write!(f, "{n} to 20"),
             Legs::Between(a, b) => write!(f, "{a} to {b}"),
             Legs::Even => write!(f, "an even number (up to 20) of"),
+            Legs::Any => write!(f, "any number of"),
         }
     }
 }
@@ -97,6 +102,7 @@ pub const FAMILIES: &[Family] = &[
     symmetric::W,
     symmetric::DICKE,
     random_unitary::FAMILY,
+    random_tensor::FAMILY,
     one_leg::BASIS,
     one_leg::PLUS,
     one_leg::RANDOM,

@@ -55,42 +55,6 @@ pub(in crate::network) fn check_keys(
     }
 }
 
-/// A whole number of a table, where it is there.
-pub(in crate::network) fn whole(
-    map: &Map<String, Value>,
-    key: &'static str,
-    place: &str,
-    range: std::ops::RangeInclusive<u64>,
-) -> Result<Option<u64>, Problem> {
-    let Some(value) = map.get(key) else { return Ok(None) };
-    match value.as_u64().filter(|n| range.contains(n)) {
-        Some(n) => Ok(Some(n)),
-        None => Err(Problem::Range {
-            key,
-            place: place.to_owned(),
-            value: value.to_string(),
-            least: *range.start(),
-            most: *range.end(),
-        }),
-    }
-}
-
-/// A text of a table, where it is there.
-pub(in crate::network) fn word<'a>(
-    map: &'a Map<String, Value>,
-    key: &'static str,
-    place: &str,
-    known: &'static str,
-) -> Result<Option<&'a str>, Problem> {
-    match map.get(key) {
-        None => Ok(None),
-        Some(Value::String(s)) => Ok(Some(s)),
-        Some(other) => {
-            Err(Problem::Word { key, place: place.to_owned(), value: other.to_string(), known })
-        }
-    }
-}
-
 #[cfg(test)]
 mod tests {
     use super::nearest;

@@ -6,13 +6,13 @@
 mod blocks;
 mod keys;
 mod problem;
-mod raw;
+pub(in crate::network) mod raw;
 mod read;
 mod write;
 
 pub(in crate::network) use blocks::BlockShelf;
+pub(in crate::network) use keys::check_keys;
 pub use keys::nearest;
-pub(in crate::network) use keys::{check_keys, whole, word};
 pub use problem::{FileError, Problem};
 pub use read::{from_toml, load, load_with};
 pub use write::{Format, save, to_bytes};

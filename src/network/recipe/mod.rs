@@ -3,17 +3,40 @@
 //! | family | what it makes |
 //! |---|---|
 //! | [`TilingRecipe`] | a patch of a {p,q} tiling, with bulk legs, holes and exceptions |
+//! | [`WormholeRecipe`] | two patches glued along holes |
+//! | [`LatticeRecipe`] | a square, cubic, hexagonal or triangular lattice |
+//! | [`TreeRecipe`] | a complete tree |
+//! | [`LayeredRecipe`] | a layered isometric network |
+//! | [`ChainRecipe`] | a chain of tensors, one a site |
+//! | [`RegularRecipe`] | a random regular graph |
+//! | [`GeometricRecipe`] | a random geometric graph |
+//! | [`CompleteRecipe`] | a complete graph |
 
+mod chain;
+mod fields;
+mod lattice;
+mod layered;
+mod random;
 mod select;
 mod setting;
 mod tiling;
+mod tree;
+mod weave;
+mod wormhole;
 
+pub use chain::ChainRecipe;
+pub use lattice::{LatticeKind, LatticeOpen, LatticeRecipe};
+pub use layered::{LayeredKind, LayeredRecipe, LayeredTop};
+pub use random::{CompleteRecipe, GeometricRecipe, RegularRecipe};
 pub use select::Selection;
 pub use tiling::{TileRule, TilingRecipe, Turns};
+pub use tree::{RootLeg, TreeRecipe};
+pub use wormhole::WormholeRecipe;
 
 pub(in crate::network) use setting::{LegDims, Setting};
 
 use super::file::Problem;
+use super::source::NamedBlock;
 use super::{Limits, Network, Overrides};
 use serde_json::{Map, Value};
 use std::path::Path;
@@ -24,10 +47,36 @@ use std::path::Path;
 pub enum Recipe {
     /// A patch of a tiling.
     Tiling(TilingRecipe),
+    /// Two patches glued along holes.
+    Wormhole(WormholeRecipe),
+    /// A lattice.
+    Lattice(LatticeRecipe),
+    /// A complete tree.
+    Tree(TreeRecipe),
+    /// A layered isometric network.
+    Layered(LayeredRecipe),
+    /// A chain.
+    Chain(ChainRecipe),
+    /// A random regular graph.
+    Regular(RegularRecipe),
+    /// A random geometric graph.
+    Geometric(GeometricRecipe),
+    /// A complete graph.
+    Complete(CompleteRecipe),
 }
 
 /// Names of the families, which are the keys that hold recipes in a file.
-pub(in crate::network) const FAMILIES: &[&str] = &["tiling"];
+pub(in crate::network) const FAMILIES: &[&str] = &[
+    "tiling",
+    "wormhole",
+    "lattice",
+    "tree",
+    "layered",
+    "chain",
+    "regular",
+    "geometric",
+    "complete",
+];
 
 impl Recipe {
     /// Reads the table of a family.
@@ -35,18 +84,35 @@ impl Recipe {
         family: &str,
         map: &Map<String, Value>,
     ) -> Result<Self, Problem> {
-        match family {
-            "tiling" => Ok(Self::Tiling(TilingRecipe::read(map, "[tiling]")?)),
+        Ok(match family {
+            "tiling" => Self::Tiling(TilingRecipe::read(map, "[tiling]")?),
+            "wormhole" => Self::Wormhole(WormholeRecipe::read(map)?),
+            "lattice" => Self::Lattice(LatticeRecipe::read(map)?),
+            "tree" => Self::Tree(TreeRecipe::read(map)?),
+            "layered" => Self::Layered(LayeredRecipe::read(map)?),
+            "chain" => Self::Chain(ChainRecipe::read(map)?),
+            "regular" => Self::Regular(RegularRecipe::read(map)?),
+            "geometric" => Self::Geometric(GeometricRecipe::read(map)?),
+            "complete" => Self::Complete(CompleteRecipe::read(map)?),
             _ => unreachable!("only known families come here"),
-        }
+        })
     }
     /// The family and its table, as a file holds them.
     pub fn to_table(&self) -> (&'static str, Map<String, Value>) {
         match self {
             Self::Tiling(r) => ("tiling", r.to_table()),
+            Self::Wormhole(r) => ("wormhole", r.to_table()),
+            Self::Lattice(r) => ("lattice", r.to_table()),
+            Self::Tree(r) => ("tree", r.to_table()),
+            Self::Layered(r) => ("layered", r.to_table()),
+            Self::Chain(r) => ("chain", r.to_table()),
+            Self::Regular(r) => ("regular", r.to_table()),
+            Self::Geometric(r) => ("geometric", r.to_table()),
+            Self::Complete(r) => ("complete", r.to_table()),
         }
     }
-    /// Makes the network, every leg of dimension `dimension`.
+    /// Makes the network, every leg of dimension `dimension` where the recipe does not say
+    /// otherwise.
     ///
     /// # Errors
     /// [`Problem`].
@@ -69,6 +135,14 @@ impl Recipe {
     fn expand(&self, setting: &mut Setting<'_>) -> Result<Network, Problem> {
         match self {
             Self::Tiling(r) => r.expand(setting),
+            Self::Wormhole(r) => r.expand(setting),
+            Self::Lattice(r) => r.expand(setting),
+            Self::Tree(r) => r.expand(setting),
+            Self::Layered(r) => r.expand(setting),
+            Self::Chain(r) => r.expand(setting),
+            Self::Regular(r) => r.expand(setting),
+            Self::Geometric(r) => r.expand(setting),
+            Self::Complete(r) => r.expand(setting),
         }
     }
 }
@@ -79,4 +153,15 @@ pub(in crate::network) fn expand(
     setting: &mut Setting<'_>,
 ) -> Result<Network, Problem> {
     Recipe::read(family, map)?.expand(setting)
+}
+
+/// The block asked for, or else the perfect one with as many legs as needed.
+fn perfect(block: Option<&NamedBlock>) -> NamedBlock {
+    block.cloned().unwrap_or_else(|| NamedBlock::family("perfect"))
+}
+
+/// The block asked for, or else random numbers, other ones for each tensor.
+fn or_random(block: Option<&NamedBlock>, tensor: usize) -> NamedBlock {
+    let random = || NamedBlock { seed: tensor as u64, ..NamedBlock::family("random-tensor") };
+    block.cloned().unwrap_or_else(random)
 }

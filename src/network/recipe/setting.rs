@@ -16,10 +16,6 @@ impl LegDims {
     pub(in crate::network) fn new(default: Option<usize>, given: Vec<(String, usize)>) -> Self {
         Self { default, given: given.into_iter().map(|(l, d)| (l, (d, false))).collect() }
     }
-    /// The dimension of a label, or else of every leg.
-    pub(in crate::network) fn of(&mut self, label: &str) -> Result<usize, Problem> {
-        self.of_or(label, None)
-    }
     /// The dimension of a label, or else `own`, or else that of every leg.
     pub(in crate::network) fn of_or(
         &mut self,

@@ -1,15 +1,16 @@
 //! A patch of a tiling as a network: one tensor a tile.
 
+use super::fields::Fields;
 use super::{Selection, Setting};
-use crate::network::file::{Problem, check_keys, whole, word};
+use crate::network::file::Problem;
 use crate::network::source::NamedBlock;
 use crate::network::{Layout, Network, NetworkBuilder};
-use crate::tiling::{Centre, Growth, Patch, Rule, Tiling, grow};
+use crate::tiling::{Centre, Growth, Patch, Rule, Tiling, TilingError, grow};
 use serde_json::{Map, Value, json};
 
 mod sheet;
 
-use sheet::{Sheet, lay};
+pub(super) use sheet::{Join, Sheet, lay};
 
 /// By how many sides blocks are turned: leg k of the block lies on side k + turn.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]
@@ -91,58 +92,33 @@ impl TilingRecipe {
     }
 
     pub(super) fn read(map: &Map<String, Value>, place: &str) -> Result<Self, Problem> {
-        check_keys(map, KEYS, place)?;
-        let needed = |key: &'static str| Problem::MissingKey { key, place: place.to_owned() };
+        let fields = Fields::new(map, KEYS, place)?;
         let most = u64::from(Tiling::MOST);
-        let polygons = list(map, "polygon", place, 3..=most)?.ok_or_else(|| needed("polygon"))?;
-        let around = whole(map, "around", place, 3..=most)?.ok_or_else(|| needed("around"))?;
-        let rings = whole(map, "rings", place, 0..=u64::from(u32::MAX))?;
-        let choose = |key, known: &'static str, default: bool| match word(map, key, place, known)? {
-            None => Ok(default),
-            Some(w) => match known.split(", ").position(|k| k == w) {
-                Some(n) => Ok(n == 1),
-                None => Err(unknown(key, place, w, known)),
-            },
-        };
-        let rule = if choose("growth", "vertex, edge", false)? { Rule::Edge } else { Rule::Vertex };
-        let centre =
-            if choose("centre", "tile, vertex", false)? { Centre::Vertex } else { Centre::Tile };
-        let keep_last = choose("then", "repeat, last", false)?;
+        let narrow = |list: Vec<u64>| list.into_iter().map(|n| n as u32).collect::<Vec<u32>>();
+        let polygons = fields.numbers("polygon", 3..=most)?;
         let growth = Growth {
-            polygons,
-            keep_last,
-            around: around as u32,
-            rings: rings.ok_or_else(|| needed("rings"))? as u32,
-            centre,
-            rule,
+            polygons: narrow(polygons.ok_or_else(|| fields.missing("polygon"))?),
+            keep_last: fields.word("then", "repeat, last")? == 1,
+            around: fields.needed("around", 3..=most)? as u32,
+            rings: fields.needed("rings", 0..=u64::from(u32::MAX))? as u32,
+            centre: [Centre::Tile, Centre::Vertex][fields.word("centre", "tile, vertex")?],
+            rule: [Rule::Vertex, Rule::Edge][fields.word("growth", "vertex, edge")?],
         };
-        let blocks = match map.get("blocks") {
-            None => Vec::new(),
-            Some(Value::Array(list)) => {
-                list.iter().map(|v| as_block(v, "blocks", place)).collect::<Result<_, _>>()?
-            }
-            Some(other) => return Err(unknown("blocks", place, &other.to_string(), BLOCKS)),
-        };
-        let rules = match map.get("tile") {
-            None => Vec::new(),
-            Some(Value::Array(list)) => {
-                list.iter().map(|v| TileRule::read(v, place)).collect::<Result<_, _>>()?
-            }
-            Some(other) => {
-                return Err(unknown("tile", place, &other.to_string(), "a list of tables"));
-            }
-        };
+        if growth.polygons.is_empty() {
+            return Err(TilingError::NoPolygon.into());
+        }
+        let rules = fields.tables("tile")?;
+        let bulk_dimension = fields.whole("bulk_dimension", 1..=u64::from(u32::MAX >> 1))?;
         Ok(Self {
             growth,
-            block: block(map, "block", place)?,
-            blocks,
-            turns: Turns(list(map, "turn", place, 0..=most)?.unwrap_or_default()),
-            bulk: selection(map, "bulk", place)?.unwrap_or_default(),
-            bulk_dimension: whole(map, "bulk_dimension", place, 1..=u64::from(u32::MAX >> 1))?
-                .map(|d| d as usize),
-            bulk_state: block(map, "bulk_state", place)?,
-            remove: selection(map, "remove", place)?.unwrap_or_default(),
-            rules,
+            block: fields.block("block")?,
+            blocks: fields.blocks("blocks")?,
+            turns: Turns(fields.numbers("turn", 0..=most)?.map(narrow).unwrap_or_default()),
+            bulk: fields.selection("bulk")?.unwrap_or_default(),
+            bulk_dimension: bulk_dimension.map(|d| d as usize),
+            bulk_state: fields.block("bulk_state")?,
+            remove: fields.selection("remove")?.unwrap_or_default(),
+            rules: rules.into_iter().map(|m| TileRule::read(m, place)).collect::<Result<_, _>>()?,
         })
     }
 
@@ -233,24 +209,17 @@ impl TilingRecipe {
 }
 
 impl TileRule {
-    fn read(value: &Value, place: &str) -> Result<Self, Problem> {
+    fn read(map: &Map<String, Value>, place: &str) -> Result<Self, Problem> {
         let place = format!("a tile of {place}");
-        let Value::Object(map) = value else {
-            return Err(unknown("tile", &place, &value.to_string(), "a list of tables"));
-        };
-        check_keys(map, RULE_KEYS, &place)?;
-        let bulk = match map.get("bulk") {
-            None => None,
-            Some(Value::Bool(b)) => Some(*b),
-            Some(other) => return Err(unknown("bulk", &place, &other.to_string(), "true, false")),
-        };
+        let fields = Fields::new(map, RULE_KEYS, &place)?;
+        let bulk = fields.get("bulk").map(|_| fields.flag("bulk", false)).transpose()?;
+        let turn = fields.whole("turn", 0..=u64::from(Tiling::MOST))?;
         Ok(Self {
-            tiles: selection(map, "tiles", &place)?
-                .ok_or(Problem::MissingKey { key: "tiles", place: place.clone() })?,
-            block: block(map, "block", &place)?,
-            turn: whole(map, "turn", &place, 0..=u64::from(Tiling::MOST))?.map(|t| t as u32),
+            tiles: fields.selection("tiles")?.ok_or_else(|| fields.missing("tiles"))?,
+            block: fields.block("block")?,
+            turn: turn.map(|t| t as u32),
             bulk,
-            bulk_state: block(map, "bulk_state", &place)?,
+            bulk_state: fields.block("bulk_state")?,
         })
     }
     fn to_value(&self) -> Value {
@@ -270,59 +239,6 @@ impl TileRule {
         }
         Value::Object(map)
     }
-}
-
-const BLOCKS: &str = "a block's name, or a table with family and settings";
-
-fn unknown(key: &'static str, place: &str, value: &str, known: &'static str) -> Problem {
-    Problem::Word { key, place: place.to_owned(), value: value.to_owned(), known }
-}
-
-fn as_block(value: &Value, key: &'static str, place: &str) -> Result<NamedBlock, Problem> {
-    NamedBlock::from_value(value).ok_or_else(|| unknown(key, place, &value.to_string(), BLOCKS))
-}
-
-pub(super) fn block(
-    map: &Map<String, Value>,
-    key: &'static str,
-    place: &str,
-) -> Result<Option<NamedBlock>, Problem> {
-    map.get(key).map(|v| as_block(v, key, place)).transpose()
-}
-
-fn selection(
-    map: &Map<String, Value>,
-    key: &'static str,
-    place: &str,
-) -> Result<Option<Selection>, Problem> {
-    let Some(value) = map.get(key) else { return Ok(None) };
-    let text = value.as_str().map_or_else(|| value.to_string(), str::to_owned);
-    match Selection::parse(&text) {
-        Some(s) => Ok(Some(s)),
-        None => Err(Problem::Selection { key, place: place.to_owned(), text }),
-    }
-}
-
-/// A whole number, or a list of them.
-fn list(
-    map: &Map<String, Value>,
-    key: &'static str,
-    place: &str,
-    range: std::ops::RangeInclusive<u64>,
-) -> Result<Option<Vec<u32>>, Problem> {
-    let Some(Value::Array(items)) = map.get(key) else {
-        return Ok(whole(map, key, place, range)?.map(|n| vec![n as u32]));
-    };
-    let numbers = items.iter().map(|v| {
-        v.as_u64().filter(|n| range.contains(n)).map(|n| n as u32).ok_or_else(|| Problem::Range {
-            key,
-            place: place.to_owned(),
-            value: v.to_string(),
-            least: *range.start(),
-            most: *range.end(),
-        })
-    });
-    numbers.collect::<Result<Vec<_>, _>>().map(Some)
 }
 
 /// The layout of sheets: rings, sheets and boundary cycles.

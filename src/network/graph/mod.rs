@@ -1,0 +1,10 @@
+//! Graphs: random ones, and questions about any.
+
+mod geometric;
+mod regular;
+
+pub use geometric::geometric;
+pub use regular::regular;
+
+/// Edges as pairs of vertices, in order.
+pub type Edges = Vec<(u32, u32)>;
