@@ -2,6 +2,7 @@
 
 use super::common::write_file;
 use super::{Common, Failure, Verdict, show};
+use crate::network::import::{GraphFormat, GraphReading, einsum, read_graph};
 use crate::network::{
     ChainRecipe, CompleteRecipe, Format, GeometricRecipe, LatticeKind, LatticeOpen, LatticeRecipe,
     LayeredKind, LayeredRecipe, LayeredTop, Limits, NamedBlock, Network, Recipe, RegularRecipe,
@@ -9,6 +10,7 @@ use crate::network::{
 };
 use crate::tiling::{Centre, Growth, Rule, Tiling};
 use clap::{Subcommand, ValueEnum};
+use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
 /// Arguments of `lierne grow`.
@@ -38,6 +40,10 @@ enum Family {
     Geometric(GeometricArgs),
     /// A complete graph
     Complete(CompleteArgs),
+    /// A graph from a file: edge list, GraphML or .gr
+    Graph(GraphArgs),
+    /// An einsum expression with sizes, as 'ab,bc,cd->ad'
+    Einsum(EinsumArgs),
 }
 
 #[derive(Debug, clap::Args)]
@@ -313,6 +319,57 @@ struct CompleteArgs {
     graph: GraphOptions,
 }
 
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum FormatWord {
+    /// Two vertices a line, and a dimension where there is one
+    Edges,
+    /// GraphML
+    Graphml,
+    /// `p tw n m`, then one edge a line
+    Gr,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum ReadingWord {
+    /// Vertices are tensors, edges are bonds
+    Tensors,
+    /// Vertices are indices, edges are two-leg tensors that hold those of their ends
+    Factors,
+}
+
+#[derive(Debug, clap::Args)]
+struct GraphArgs {
+    /// The graph file
+    #[arg(value_name = "FILE")]
+    file: PathBuf,
+    /// What vertices and edges become
+    #[arg(long = "as", value_enum, default_value = "tensors")]
+    reading: ReadingWord,
+    /// Notation of the file; without it, told by the file's ending
+    #[arg(long, value_enum)]
+    format: Option<FormatWord>,
+    #[command(flatten)]
+    graph: GraphOptions,
+}
+
+#[derive(Debug, clap::Args)]
+struct EinsumArgs {
+    /// The expression; with white space inside an operand, labels are words
+    #[arg(value_name = "EXPRESSION")]
+    expression: String,
+    /// Sizes, as a=3,b=8; other labels have the size --dimension
+    #[arg(long, value_name = "LABEL=SIZE", value_delimiter = ',')]
+    size: Vec<String>,
+    /// NumPy files of the operands, in order, relative to the folder of --out
+    #[arg(long, value_name = "FILE", value_delimiter = ',')]
+    array: Vec<String>,
+    /// Block of every operand; without it random numbers
+    #[arg(long, value_name = "NAME")]
+    block: Option<String>,
+    #[command(flatten)]
+    output: Output,
+}
+
 /// Runs the command.
 ///
 /// # Errors
@@ -372,12 +429,75 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
             };
             (Recipe::Complete(recipe), &a.graph.output)
         }
+        Family::Graph(a) => return a.run(common),
+        Family::Einsum(a) => return a.run(common),
     };
     deliver(&recipe, output, common)
 }
 
 fn named(family: Option<&String>) -> Option<NamedBlock> {
     family.map(NamedBlock::family)
+}
+
+impl GraphArgs {
+    fn run(&self, common: &Common) -> Result<Verdict, Failure> {
+        let output = &self.graph.output;
+        output.no_recipe("a graph file")?;
+        let format = match self.format {
+            None => GraphFormat::of(&self.file),
+            Some(FormatWord::Edges) => GraphFormat::Edges,
+            Some(FormatWord::Graphml) => GraphFormat::GraphMl,
+            Some(FormatWord::Gr) => GraphFormat::Gr,
+        };
+        let reading = match self.reading {
+            ReadingWord::Tensors => GraphReading::Tensors,
+            ReadingWord::Factors => GraphReading::Factors,
+        };
+        let limits = output.limits();
+        let graph = read_graph(&self.file, format, &limits)?;
+        let stem = self.file.file_stem().map(|s| s.to_string_lossy().into_owned());
+        let network = graph.network(
+            &output.name_or(&stem.unwrap_or_default()),
+            reading,
+            self.graph.open,
+            output.dimension as usize,
+            named(self.graph.block.as_ref()).as_ref(),
+            &limits,
+        )?;
+        deliver_network(&network, output, common)
+    }
+}
+
+impl EinsumArgs {
+    fn run(&self, common: &Common) -> Result<Verdict, Failure> {
+        self.output.no_recipe("an einsum expression")?;
+        let mut sizes = BTreeMap::new();
+        for text in &self.size {
+            let pair = text.split_once('=').and_then(|(label, size)| {
+                let size =
+                    size.trim().parse::<u32>().ok().filter(|&s| (1..1 << 31).contains(&s))?;
+                Some((label.trim().to_owned(), size as usize))
+            });
+            let Some((label, size)) = pair else {
+                return Err(Failure::new(format!("--size {text:?}: write label=size, as a=3")));
+            };
+            if sizes.insert(label.clone(), size).is_some_and(|s| s != size) {
+                return Err(Failure::new(format!("--size gives two sizes for {label:?}")));
+            }
+        }
+        let folder = self.output.out.as_deref().and_then(Path::parent).unwrap_or(Path::new(""));
+        let network = einsum(
+            &self.output.name_or("einsum"),
+            &self.expression,
+            &sizes,
+            Some(self.output.dimension as usize),
+            named(self.block.as_ref()).as_ref(),
+            &self.array,
+            folder,
+            &self.output.limits(),
+        )?;
+        deliver_network(&network, &self.output, common)
+    }
 }
 
 impl LatticeArgs {
@@ -480,7 +600,7 @@ impl TilingArgs {
 }
 
 fn deliver(recipe: &Recipe, output: &Output, common: &Common) -> Result<Verdict, Failure> {
-    let limits = Limits { tensors: output.most_tensors, ..Limits::default() };
+    let limits = output.limits();
     let name = output.name_or(recipe.to_table().0);
     // The network is made in any case: a recipe that cannot be made is not written.
     let network = recipe.network(&name, Some(output.dimension as usize), &limits)?;
@@ -517,6 +637,16 @@ fn deliver_network(
 }
 
 impl Output {
+    fn limits(&self) -> Limits {
+        Limits { tensors: self.most_tensors, ..Limits::default() }
+    }
+    fn no_recipe(&self, what: &str) -> Result<(), Failure> {
+        if self.recipe {
+            let sentence = format!("--recipe: {what} has no recipe; leave it out");
+            return Err(Failure::new(sentence));
+        }
+        Ok(())
+    }
     /// The name given, or else that of the file, or else that of the family.
     fn name_or(&self, family: &str) -> String {
         let stem = || Some(self.out.as_ref()?.file_stem()?.to_string_lossy().into_owned());

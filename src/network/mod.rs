@@ -8,11 +8,13 @@ mod file;
 mod frames;
 pub mod graph;
 mod ids;
+pub mod import;
 mod intern;
 mod limits;
 mod recipe;
 mod region;
 mod source;
+mod survey;
 mod the_network;
 
 pub use build::{NetworkBuilder, NetworkError};
@@ -27,4 +29,5 @@ pub use recipe::{
 };
 pub use region::{Region, RegionError};
 pub use source::{BlockSource, NamedBlock};
+pub use survey::{Survey, TilingSurvey};
 pub use the_network::{Layout, Network};

@@ -161,7 +161,7 @@ fn perfect(block: Option<&NamedBlock>) -> NamedBlock {
 }
 
 /// The block asked for, or else random numbers, other ones for each tensor.
-fn or_random(block: Option<&NamedBlock>, tensor: usize) -> NamedBlock {
+pub(in crate::network) fn or_random(block: Option<&NamedBlock>, tensor: usize) -> NamedBlock {
     let random = || NamedBlock { seed: tensor as u64, ..NamedBlock::family("random-tensor") };
     block.cloned().unwrap_or_else(random)
 }
