@@ -314,6 +314,21 @@ impl<'c> Held<'c> {
         let places = self.checks.places_of_bulk(bulk_leg);
         self.operators().any(|r| !self.checks.packing.vanishes(self.span.row(r), places.clone()))
     }
+    /// How many independent actions on this bulk leg the set holds, counted on the leg alone.
+    pub(super) fn acting_on(&self, bulk_leg: usize) -> usize {
+        let p = self.checks.packing;
+        let places = self.checks.places_of_bulk(bulk_leg);
+        let small = Packing { prime: p.prime, width: places.len() };
+        let mut span = Span::new(small);
+        for r in self.operators() {
+            let mut v = vec![0; small.stride()];
+            for (i, c) in places.clone().enumerate() {
+                small.set(&mut v, i, p.get(self.span.row(r), c));
+            }
+            span.push(&v);
+        }
+        span.dimension()
+    }
     /// Whether the set holds every operator of this bulk leg (trivial on all other bulk
     /// legs): then the leg can be recovered from the set.
     pub fn holds(&self, bulk_leg: usize) -> bool {

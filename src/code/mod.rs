@@ -8,6 +8,8 @@ pub mod erasure;
 pub mod greedy;
 pub mod isometry;
 pub mod pattern;
+pub mod pauli;
+pub mod push;
 pub mod reach;
 pub mod recover;
 #[cfg(test)]

@@ -6,6 +6,7 @@ use crate::block::PrimePart;
 use crate::entropy::Wires;
 use crate::network::{Network, TensorId};
 use crate::tensor::Label;
+use std::sync::Arc;
 use thiserror::Error;
 
 /// Why a question about a code has no answer.
@@ -78,6 +79,40 @@ pub enum CodeError {
         /// The network's name.
         network: String,
     },
+    /// A region that does not determine what is asked of it.
+    #[error(
+        "region {region:?} cannot hold this operator of bulk leg {leg:?}: the rest of the boundary holds {against} independent operators that act on the leg, and what the region does must commute with them"
+    )]
+    CannotHold {
+        /// The bulk leg.
+        leg: String,
+        /// The region.
+        region: String,
+        /// Independent actions on the leg that the rest holds.
+        against: usize,
+    },
+    /// The best operator on a region is not good enough.
+    #[error(
+        "region {region:?} cannot hold this operator of bulk leg {leg:?}: the best operator on it misses by {defect:.3e} of its size"
+    )]
+    Defect {
+        /// The bulk leg.
+        leg: String,
+        /// The region.
+        region: String,
+        /// The relative miss.
+        defect: f64,
+    },
+    /// An operator of a wrong shape.
+    #[error("the operator is an array of {rows} × {columns}, but the bulk leg has dimension {dim}")]
+    OperatorShape {
+        /// Rows.
+        rows: usize,
+        /// Columns.
+        columns: usize,
+        /// The leg's dimension.
+        dim: usize,
+    },
     /// The search for a contraction order failed.
     #[error(transparent)]
     Order(#[from] crate::order::OrderError),
@@ -112,6 +147,7 @@ pub struct Code<'n> {
     wires: Wires<'n>,
     greedy: Greedy,
     checks: Vec<Checks>,
+    states: Arc<[PrimePart]>,
 }
 
 impl<'n> Code<'n> {
@@ -125,13 +161,14 @@ impl<'n> Code<'n> {
         }
         let wires = Wires::of(network);
         let greedy = Greedy::of(&wires);
-        Ok(Self { network, wires, greedy, checks: Vec::new() })
+        Ok(Self { network, wires, greedy, checks: Vec::new(), states: Arc::from([]) })
     }
     /// Adds the exact answers' foundation: the state on the open legs (boundary, then bulk,
     /// in the network's order), one part a prime.
     #[must_use]
     pub fn with_states(mut self, states: &[PrimePart]) -> Self {
         let sites = self.network.boundary().len();
+        self.states = states.into();
         self.checks = states.iter().map(|s| Checks::of(s, sites)).collect();
         self
     }
@@ -150,6 +187,10 @@ impl<'n> Code<'n> {
     /// Checks of its stabilizer form, primes ascending; empty where there is none.
     pub fn checks(&self) -> &[Checks] {
         &self.checks
+    }
+    /// The stabilizer states that it was given, primes ascending.
+    pub fn states(&self) -> &[PrimePart] {
+        &self.states
     }
     /// Whether exact answers over finite fields can be had.
     pub fn is_stabilizer(&self) -> bool {
