@@ -1,5 +1,6 @@
 //! Networks with bulk legs as codes: what the bulk encodes, what can be recovered, how many
 //! erasures survive.
+pub mod bounds;
 mod checks;
 mod dense;
 pub mod distance;

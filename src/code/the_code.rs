@@ -3,9 +3,10 @@
 use super::checks::{Checks, Held};
 use super::greedy::Greedy;
 use crate::block::PrimePart;
-use crate::entropy::Wires;
+use crate::entropy::{Wires, stabilizer};
 use crate::network::{Network, TensorId};
 use crate::tensor::Label;
+use crate::watch::Watch;
 use std::sync::Arc;
 use thiserror::Error;
 
@@ -113,6 +114,9 @@ pub enum CodeError {
         /// The leg's dimension.
         dim: usize,
     },
+    /// The network's stabilizer state could not be had.
+    #[error(transparent)]
+    Stabilizer(#[from] stabilizer::StabilizerError),
     /// The search for a contraction order failed.
     #[error(transparent)]
     Order(#[from] crate::order::OrderError),
@@ -171,6 +175,27 @@ impl<'n> Code<'n> {
         self.states = states.into();
         self.checks = states.iter().map(|s| Checks::of(s, sites)).collect();
         self
+    }
+    /// Reads a network and, where all of its tensors are stabilizer states, contracts it to
+    /// the state on its open legs, so that exact answers can be had.
+    ///
+    /// # Errors
+    /// [`CodeError::NoBulk`], [`CodeError::Stabilizer`] (a network that contracts to zero).
+    pub fn prepared(network: &'n Network, watch: &dyn Watch) -> Result<Self, CodeError> {
+        let code = Self::of(network)?;
+        if !stabilizer::has_states(&code.wires) {
+            return Ok(code);
+        }
+        let states: Vec<PrimePart> = stabilizer::states(&code.wires, watch)?
+            .iter()
+            .map(|s| PrimePart {
+                prime: s.prime(),
+                digits: (0..s.legs()).map(|l| s.columns(l).len() as u32).collect(),
+                generators: s.generators(),
+                phases: (0..s.width()).map(|r| s.phase(r)).collect(),
+            })
+            .collect();
+        Ok(code.with_states(&states))
     }
     /// The network.
     pub fn network(&self) -> &'n Network {
