@@ -3,6 +3,7 @@
 use super::arena::Arena;
 use super::layout::{Layout, strides};
 use super::program::Program;
+use super::walk::Numeric;
 use super::{Algebra, ContractError, Leaf, Step};
 use crate::block::{Block, Entries};
 use crate::linalg::Scalar;
@@ -10,7 +11,7 @@ use crate::tensor::{Dense, Label, gather, largest, reduced};
 use ndarray::{ArrayD, Axis, IxDyn};
 use num_complex::Complex64;
 use std::ops::Deref;
-use std::sync::{Arc, OnceLock};
+use std::sync::{Arc, Mutex, OnceLock};
 
 /// The entries of a tensor: its own, or those of a leaf that all slices share.
 pub(super) enum Values<T> {
@@ -53,6 +54,7 @@ pub(super) struct DenseAlgebra<'a, T> {
     pub arena: &'a Arena<T>,
     /// Leaves that no slice changes, kept after their first use where there are slices.
     kept: Vec<OnceLock<Kept<T>>>,
+    done: Mutex<u128>,
 }
 
 type Kept<T> = (Arc<Vec<T>>, i64, i64);
@@ -96,7 +98,7 @@ impl<'a, T: Scalar> DenseAlgebra<'a, T> {
     pub fn new(program: &'a Program, layout: &'a Layout, arena: &'a Arena<T>) -> Self {
         let leaves = if program.slices > 1 { program.leaves.len() } else { 0 };
         let kept = (0..leaves).map(|_| OnceLock::new()).collect();
-        Self { program, layout, arena, kept }
+        Self { program, layout, arena, kept, done: Mutex::new(0) }
     }
 
     /// Order of a tensor's axes.
@@ -127,8 +129,14 @@ impl<'a, T: Scalar> DenseAlgebra<'a, T> {
         Held { values: Values::Own(values), exponent: exponent + e, high: 1, low }
     }
 
-    /// The final tensor with its axes in the order of the open labels.
-    pub fn finish(&self, held: Held<T>) -> (ArrayD<T>, i64) {
+    /// Estimated time of a step.
+    pub fn nanoseconds(&self, number: usize) -> f64 {
+        self.layout.steps[number].loops.nanoseconds(T::COMPLEX, size_of::<T>())
+    }
+}
+
+impl<T: Scalar> Numeric<T> for DenseAlgebra<'_, T> {
+    fn finish(&self, held: Held<T>) -> (ArrayD<T>, i64) {
         let from = self.order(self.layout.orders.len() - 1);
         let to = &self.program.open;
         let values = match held.values {
@@ -143,6 +151,9 @@ impl<'a, T: Scalar> DenseAlgebra<'a, T> {
         let dims: Vec<usize> = to.iter().map(|l| self.program.sizes[l.index()]).collect();
         let array = ArrayD::from_shape_vec(IxDyn(&dims), values).expect("one entry a place");
         (array, held.exponent)
+    }
+    fn done(&self) -> u128 {
+        *self.done.lock().expect("no thread panics while it holds the count")
     }
 }
 
@@ -182,6 +193,8 @@ impl<T: Scalar> Algebra for DenseAlgebra<'_, T> {
         if let Some(slot) = slot
             && let Values::Own(v) = held.values
         {
+            // Shared leaves are reckoned with apart from the arena.
+            self.arena.release(v.len());
             let kept = slot.get_or_init(|| (Arc::new(v), held.exponent, held.low));
             held.values = Values::Shared(Arc::clone(&kept.0));
         }
@@ -207,6 +220,8 @@ impl<T: Scalar> Algebra for DenseAlgebra<'_, T> {
         let len = self.program.entries(self.order(self.program.leaves.len() + number));
         let mut values = self.arena.fill(len, |out| plan.loops.run(&a.values, &b.values, out));
         let mut exponent = a.exponent + b.exponent;
+        *self.done.lock().expect("no thread panics while it holds the count") +=
+            plan.loops.multiply_adds();
         let terms = self.program.entries(&step.sum).max(1);
         // One more for the two products of a complex one.
         let mut high = a.high + b.high + 1 + i64::from(usize::BITS - terms.leading_zeros());
@@ -221,7 +236,7 @@ impl<T: Scalar> Algebra for DenseAlgebra<'_, T> {
     }
 
     fn cost(&self, number: usize, _: &Step, _: &Held<T>, _: &Held<T>) -> f64 {
-        self.layout.steps[number].loops.nanoseconds(T::COMPLEX, size_of::<T>())
+        self.nanoseconds(number)
     }
 }
 

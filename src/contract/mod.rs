@@ -21,6 +21,7 @@ mod schedule;
 mod slices;
 mod slicing;
 mod solve;
+mod sparse;
 mod sums;
 mod team;
 mod total;

@@ -7,10 +7,11 @@ use super::layout::Layout;
 use super::program::Program;
 use super::record::{Refusal, decode, encode};
 use super::schedule::Schedule;
+use super::sparse::SparseAlgebra;
 use super::sums::{Node, Sums};
 use super::team::Team;
 use super::total::Total;
-use super::walk::Walk;
+use super::walk::{Numeric, Walk};
 use super::{ContractError, Problem, Request};
 use crate::linalg::Scalar;
 use crate::watch::{News, Watch};
@@ -32,6 +33,8 @@ pub(super) struct Setup<'a> {
     pub program: &'a Program,
     pub layout: &'a Layout,
     pub schedule: &'a Schedule,
+    /// Whether entries that vanish are left out.
+    pub sparse: bool,
     /// Slices that may be alive at once.
     pub together: usize,
     /// Bytes that the arena may hold.
@@ -49,7 +52,23 @@ pub(super) fn run<T: Scalar>(
 ) -> Result<(Option<Total<T>>, u128), ContractError> {
     let program = setup.program;
     let arena = Arena::<T>::new(setup.room);
-    let algebra = DenseAlgebra::new(program, setup.layout, &arena);
+    let dense = DenseAlgebra::new(program, setup.layout, &arena);
+    if setup.sparse {
+        let algebra = SparseAlgebra::new(program, dense);
+        return with(setup, &algebra, &arena, request, team, watch);
+    }
+    with(setup, &dense, &arena, request, team, watch)
+}
+
+fn with<T: Scalar, A: Numeric<T>>(
+    setup: &Setup<'_>,
+    algebra: &A,
+    arena: &Arena<T>,
+    request: &Request,
+    team: &dyn Team,
+    watch: &dyn Watch,
+) -> Result<(Option<Total<T>>, u128), ContractError> {
+    let program = setup.program;
     let units = units(program.slices);
     let mut sums = Sums::<T>::new(units);
     let checkpoint = match &request.checkpoint {
@@ -69,10 +88,8 @@ pub(super) fn run<T: Scalar>(
     }
     let progress = Progress::new(program, units, mine.len() as u64, watch);
     for wave in mine.chunks(setup.together) {
-        let totals: Vec<Result<Total<T>, ContractError>> = wave
-            .par_iter()
-            .map(|&unit| one_unit(setup, &algebra, unit, units, &progress))
-            .collect();
+        let totals: Vec<Result<Total<T>, ContractError>> =
+            wave.par_iter().map(|&unit| one_unit(setup, algebra, unit, units, &progress)).collect();
         let mut stopped = None;
         for (&unit, total) in wave.iter().zip(totals) {
             // What other units of the wave have finished is kept.
@@ -93,7 +110,7 @@ pub(super) fn run<T: Scalar>(
         }
     }
     debug_assert!(arena.peak() <= setup.room, "{} of {} bytes", arena.peak(), setup.room);
-    let done = program.multiply_adds() * program.slices * mine.len() as u128 / u128::from(units);
+    let done = algebra.done();
     if size == 1 {
         let total = sums.into_nodes().pop_first().map(|n| n.1);
         return Ok((total, done));
@@ -134,9 +151,9 @@ fn insert<T: Scalar>(
 }
 
 /// The slices of one unit, summed in order.
-fn one_unit<T: Scalar>(
+fn one_unit<T: Scalar, A: Numeric<T>>(
     setup: &Setup<'_>,
-    algebra: &DenseAlgebra<'_, T>,
+    algebra: &A,
     unit: u64,
     units: u64,
     progress: &Progress<'_>,

@@ -7,8 +7,9 @@ use super::record::hex;
 use super::schedule::Schedule;
 use super::slices::{self, Setup};
 use super::slicing;
+use super::sparse;
 use super::team::{Alone, Team};
-use super::{ContractError, Forecast, Outcome, Precision, Problem, Request};
+use super::{ContractError, Forecast, Kind, Outcome, Precision, Problem, Request};
 use crate::block::{Block, Entries};
 use crate::linalg::Scalar;
 use crate::network::Network;
@@ -102,6 +103,7 @@ pub fn share(
         program: &ready.program,
         layout: &ready.layout,
         schedule: &ready.schedule,
+        sparse: ready.sparse,
         together: ready.together,
         room: ready.arena,
         key: if request.checkpoint.is_some() || team.size() > 1 {
@@ -169,6 +171,7 @@ struct Ready {
     layout: Layout,
     schedule: Schedule,
     real: bool,
+    sparse: bool,
     together: usize,
     arena: u64,
     bytes: u64,
@@ -188,12 +191,13 @@ impl Ready {
             (true, Precision::Single) => Numbers::of::<f32>(),
             (false, Precision::Single) => Numbers::of::<Complex32>(),
         };
+        let sparse = request.kind == Kind::Automatic && distinct.iter().any(|b| sparse::pays(b));
         let stored: u64 = distinct.iter().map(|b| stored_bytes(b.entries())).sum();
         let limit = request.memory.unwrap_or(u64::MAX);
         let mut plan = plan.clone();
         let mut fewest = u64::MAX;
         loop {
-            let ready = Self::fit(problem, &plan, numbers, real, stored, limit)?;
+            let ready = Self::fit(problem, &plan, numbers, (real, sparse), stored, limit)?;
             if ready.bytes <= limit {
                 return Ok(ready);
             }
@@ -209,7 +213,7 @@ impl Ready {
         problem: &Problem,
         plan: &Plan,
         numbers: Numbers,
-        real: bool,
+        (real, sparse): (bool, bool),
         stored: u64,
         limit: u64,
     ) -> Result<Self, ContractError> {
@@ -242,7 +246,17 @@ impl Ready {
         // What is forecast does not depend on the number of threads.
         let bytes = base.saturating_add(one);
         let arena = one.saturating_mul(together as u64);
-        Ok(Self { plan: plan.clone(), program, layout, schedule, real, together, arena, bytes })
+        Ok(Self {
+            plan: plan.clone(),
+            program,
+            layout,
+            schedule,
+            real,
+            sparse,
+            together,
+            arena,
+            bytes,
+        })
     }
 }
 

@@ -5,7 +5,17 @@ use super::schedule::{Item, Schedule};
 use super::{Algebra, ContractError};
 use crate::block::Block;
 use crate::tensor::Label;
+use ndarray::ArrayD;
 use std::sync::{Arc, Mutex};
+
+/// An algebra whose tensors are arrays of numbers in the end.
+pub(super) trait Numeric<T>: Algebra {
+    /// The last tensor with its axes in the order of the open labels, and the power of two
+    /// that it is to be multiplied by.
+    fn finish(&self, tensor: Self::Tensor) -> (ArrayD<T>, i64);
+    /// Multiply-adds done so far.
+    fn done(&self) -> u128;
+}
 
 /// One pass over all steps, with some labels fixed.
 pub(super) struct Walk<'a, A: Algebra> {
