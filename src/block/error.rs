@@ -38,6 +38,14 @@ pub enum BlockError {
         /// Legs asked for.
         got: usize,
     },
+    /// The family comes with several numbers of legs and none was asked for.
+    #[error("block `{family}` has {expected} legs; say how many")]
+    LegsNeeded {
+        /// The family.
+        family: String,
+        /// What it has, in words.
+        expected: String,
+    },
     /// The family wants legs of one dimension.
     #[error("all legs of block `{family}` have one dimension, but {dims:?} were asked for")]
     UnequalDimensions {

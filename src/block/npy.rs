@@ -2,6 +2,7 @@
 //!
 //! Format: NumPy Enhancement Proposal 1 (npy versions 1 to 3).
 
+use super::Entries;
 use crate::tensor::Dense;
 use ndarray::{ArrayD, IxDyn, ShapeBuilder};
 use num_complex::Complex64;
@@ -220,18 +221,48 @@ fn shape_of(text: &str) -> Option<Vec<usize>> {
 /// # Errors
 /// [`NpyError::Io`].
 pub fn write_npy(path: &Path, data: &Dense) -> Result<(), NpyError> {
+    write(path, data.shape(), |out| match data {
+        Dense::Real(a) => a.iter().try_for_each(|v| put(out, *v, 0.0)),
+        Dense::Complex(a) => a.iter().try_for_each(|v| put(out, v.re, v.im)),
+    })
+}
+
+/// As [`write_npy`]; sparse entries are never held as a dense array.
+///
+/// # Errors
+/// [`NpyError::Io`].
+pub fn write_npy_entries(path: &Path, entries: &Entries) -> Result<(), NpyError> {
+    match entries {
+        Entries::Dense(data) => write_npy(path, data),
+        Entries::Sparse(s) => write(path, s.dims(), |out| {
+            let places: u64 = s.dims().iter().map(|&d| d as u64).product();
+            let mut at = 0;
+            for (&index, v) in s.index().iter().zip(s.value()) {
+                zeros(out, index - at)?;
+                put(out, v.re, v.im)?;
+                at = index + 1;
+            }
+            zeros(out, places - at)
+        }),
+    }
+}
+
+type Out = std::io::BufWriter<std::fs::File>;
+
+fn write(
+    path: &Path,
+    shape: &[usize],
+    body: impl FnOnce(&mut Out) -> std::io::Result<()>,
+) -> Result<(), NpyError> {
     let io = |fault| NpyError::Io { path: path.to_owned(), fault };
     let name = path.file_name().unwrap_or_default().to_string_lossy();
     let beside = path.with_file_name(format!(".{name}.part"));
     let written = std::fs::File::create(&beside)
         .and_then(|file| {
-            let mut out = std::io::BufWriter::new(file);
-            out.write_all(&header(data.shape()))?;
-            match data {
-                Dense::Real(a) => a.iter().try_for_each(|v| put(&mut out, *v, 0.0))?,
-                Dense::Complex(a) => a.iter().try_for_each(|v| put(&mut out, v.re, v.im))?,
-            }
-            out.into_inner().map_err(std::io::IntoInnerError::into_error)?.sync_all()
+            let mut out = std::io::BufWriter::with_capacity(1 << 16, file);
+            out.write_all(&header(shape))?;
+            body(&mut out)?;
+            out.flush()
         })
         .and_then(|()| std::fs::rename(&beside, path));
     if written.is_err() {
@@ -240,7 +271,19 @@ pub fn write_npy(path: &Path, data: &Dense) -> Result<(), NpyError> {
     written.map_err(io)
 }
 
-fn put(out: &mut impl Write, re: f64, im: f64) -> std::io::Result<()> {
+/// So many zero entries.
+fn zeros(out: &mut Out, count: u64) -> std::io::Result<()> {
+    const CHUNK: [u8; 1 << 14] = [0; 1 << 14];
+    let mut bytes = 16 * count;
+    while bytes > 0 {
+        let now = bytes.min(CHUNK.len() as u64);
+        out.write_all(&CHUNK[..now as usize])?;
+        bytes -= now;
+    }
+    Ok(())
+}
+
+fn put(out: &mut Out, re: f64, im: f64) -> std::io::Result<()> {
     out.write_all(&re.to_le_bytes())?;
     out.write_all(&im.to_le_bytes())
 }
@@ -265,6 +308,7 @@ fn header(shape: &[usize]) -> Vec<u8> {
 
 #[cfg(test)]
 mod tests {
+    use super::super::SparseEntries;
     use super::*;
 
     fn file(descr: &str, fortran: &str, shape: &str, body: &[u8]) -> Vec<u8> {
@@ -325,6 +369,13 @@ mod tests {
             write_npy(&path, &array).unwrap();
             assert_eq!(read_npy(&path).unwrap(), array);
         }
+        let sparse = SparseEntries::collect(
+            vec![3, 2],
+            vec![(1, Complex64::new(0.5, 2.0)), (4, Complex64::new(-1.0, 0.0))],
+        );
+        let path = dir.path().join("a.npy");
+        write_npy_entries(&path, &Entries::Sparse(sparse.clone())).unwrap();
+        assert_eq!(Entries::Dense(read_npy(&path).unwrap()).to_sparse(), sparse);
         assert_eq!(std::fs::read_dir(dir.path()).unwrap().count(), 1);
     }
 }

@@ -74,6 +74,17 @@ impl PauliRows {
     }
 }
 
+/// Numbers of sites and of logical digits of a list of generators over a prime; `None` where
+/// it does not read as one.
+pub(super) fn size(prime: usize, text: &str) -> Option<(usize, usize)> {
+    let Some((p, 1)) = crate::field::prime_power(prime as u64) else {
+        return text.split(',').next().map(|t| (t.trim().len(), 0)).filter(|s| s.0 > 0);
+    };
+    let pieces: Vec<&str> = text.split(',').map(str::trim).collect();
+    let (sites, _) = generator(p as u32, pieces[0]).ok()?;
+    Some((sites.len(), sites.len().saturating_sub(pieces.len())))
+}
+
 /// Σ z·x' − x·z' modulo p; zero where the operators commute.
 pub(super) fn symplectic(p: u32, a: &[u32], b: &[u32]) -> u32 {
     let n = a.len() / 2;

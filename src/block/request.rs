@@ -1,6 +1,6 @@
 //! What a block is asked for by, and the one door through which all are made.
 
-use super::{Block, BlockError, family};
+use super::{Block, BlockError, family, pauli_text};
 use std::collections::BTreeMap;
 
 /// A request for one block.
@@ -31,6 +31,12 @@ impl Request {
                 family: self.family.clone(),
                 dims: self.dims.clone(),
             }),
+        }
+    }
+    fn unknown(&self) -> BlockError {
+        BlockError::UnknownFamily {
+            name: self.family.clone(),
+            known: family::FAMILIES.iter().map(|f| f.name).collect::<Vec<_>>().join(", "),
         }
     }
     pub(super) fn bad_option(&self, option: &str, expected: impl Into<String>) -> BlockError {
@@ -64,10 +70,7 @@ impl Request {
 /// [`BlockError`]: an unknown family, construction or option, legs that the family does not
 /// have, a state that does not exist or is not known to exist.
 pub fn make(request: &Request) -> Result<Block, BlockError> {
-    let family = family::find(&request.family).ok_or_else(|| BlockError::UnknownFamily {
-        name: request.family.clone(),
-        known: family::FAMILIES.iter().map(|f| f.name).collect::<Vec<_>>().join(", "),
-    })?;
+    let family = family::find(&request.family).ok_or_else(|| request.unknown())?;
     if let Some(&d) = request.dims.iter().find(|&&d| d == 0 || d > 1 << 16) {
         return Err(BlockError::WrongDimensions {
             family: request.family.clone(),
@@ -93,4 +96,50 @@ pub fn make(request: &Request) -> Result<Block, BlockError> {
         });
     }
     (family.make)(request)
+}
+
+/// The dimensions of a family's legs when only one dimension, and perhaps the number of legs,
+/// is given: encoders get one bulk leg that holds all logical levels.
+///
+/// # Errors
+/// [`BlockError`] where the number of legs does not follow or the family does not exist.
+pub fn usual_dims(
+    family: &str,
+    legs: Option<usize>,
+    dimension: usize,
+    options: &BTreeMap<String, String>,
+) -> Result<Vec<usize>, BlockError> {
+    let request = Request::new(family, Vec::new());
+    let found = family::find(family).ok_or_else(|| request.unknown())?;
+    let encoder = |sites: usize, logical: usize| -> Result<Vec<usize>, BlockError> {
+        if legs == Some(sites + logical) || logical == 0 {
+            return Ok(vec![dimension; sites + logical]);
+        }
+        let bulk = dimension.checked_pow(logical as u32).ok_or_else(|| BlockError::TooLarge {
+            what: format!("the bulk leg of block `{family}`"),
+            entries: format!("{dimension}^{logical} levels, so as many"),
+            limit: 1 << 16,
+        })?;
+        let mut dims = vec![dimension; sites];
+        dims.push(bulk);
+        Ok(dims)
+    };
+    match family {
+        "code-4-2-2" if legs.is_none_or(|n| n == 5) => encoder(4, 2),
+        "stabilizer" => {
+            let text = options.get("stabilizers").map_or("", String::as_str);
+            let (sites, logical) = pauli_text::size(dimension, text).ok_or_else(|| {
+                request.bad_option("stabilizers", "generators separated by commas")
+            })?;
+            encoder(sites, logical)
+        }
+        _ => match (found.legs, legs) {
+            (family::Legs::Exactly(n), None) => Ok(vec![dimension; n]),
+            (_, Some(n)) => Ok(vec![dimension; n]),
+            (several, None) => Err(BlockError::LegsNeeded {
+                family: family.to_owned(),
+                expected: several.to_string(),
+            }),
+        },
+    }
 }

@@ -1,7 +1,7 @@
 //! From the generators of a stabilizer tensor to its table and its entries.
 
 use super::exact::{Exact, gcd};
-use super::{Block, BlockError, IsometryTable, PrimePart, Stabilizer};
+use super::{Block, BlockError, IsometryTable, PrimePart, Proof, Stabilizer};
 use std::sync::Arc;
 
 /// Most non-zero entries a block is expanded to.
@@ -113,7 +113,8 @@ impl Stabilizer {
         let shape = dims.clone();
         Ok(Block::exact_lazy(name, dims, isometries, Some(self), nonzeros, move || {
             copy.exact(&shape, norm_squared)
-        }))
+        })
+        .proven(Proof::Ranks))
     }
 }
 

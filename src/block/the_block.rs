@@ -8,6 +8,34 @@ use std::sync::{Arc, OnceLock};
 type Maker = Arc<dyn Fn() -> Entries + Send + Sync>;
 type ExactMaker = Arc<dyn Fn() -> Exact + Send + Sync>;
 
+/// How the table of isometries of a block was filled.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[non_exhaustive]
+pub enum Proof {
+    /// Every pair of symbols was counted in every pair of columns.
+    Counting,
+    /// Ranks of stabilizer generators over prime fields.
+    Ranks,
+    /// M†M = c·1 in the integers of a cyclotomic field.
+    Cyclotomic,
+    /// A closed formula for the reduced states.
+    Formula,
+    /// Floating point, within a tolerance: no proof.
+    Numerical,
+}
+
+impl std::fmt::Display for Proof {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(match self {
+            Proof::Counting => "by counting pairs",
+            Proof::Ranks => "by ranks over finite fields",
+            Proof::Cyclotomic => "in exact cyclotomic integers",
+            Proof::Formula => "by a closed formula",
+            Proof::Numerical => "numerically, within a tolerance",
+        })
+    }
+}
+
 /// A tensor with what is known about it. Its numbers are made when first asked for, so that
 /// questions which geometry or a finite field answers never build them.
 #[derive(Clone)]
@@ -17,6 +45,7 @@ pub struct Block {
     isometries: IsometryTable,
     stabilizer: Option<Stabilizer>,
     nonzeros: Option<u128>,
+    proof: Proof,
     make: Maker,
     make_exact: Option<ExactMaker>,
     entries: Arc<OnceLock<Entries>>,
@@ -38,6 +67,7 @@ impl Block {
             isometries,
             stabilizer,
             nonzeros: None,
+            proof: Proof::Numerical,
             make: Arc::new(make),
             make_exact: None,
             entries: Arc::default(),
@@ -83,6 +113,16 @@ impl Block {
         block.nonzeros = Some(u128::from(entries.nonzeros()));
         block.entries = Arc::new(OnceLock::from(entries));
         block
+    }
+    /// The same block, its table having been filled in this way.
+    #[must_use]
+    pub fn proven(mut self, proof: Proof) -> Self {
+        self.proof = proof;
+        self
+    }
+    /// How its table of isometries was filled.
+    pub fn proof(&self) -> Proof {
+        self.proof
     }
     /// The same block under another name.
     #[must_use]

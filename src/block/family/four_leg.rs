@@ -40,10 +40,10 @@ fn make(request: &Request) -> Result<Block, BlockError> {
     build(d).map(|b| b.named(format!("four-leg ({name})")))
 }
 
-type Build = fn(usize) -> Result<Block, BlockError>;
+pub(in crate::block) type Build = fn(usize) -> Result<Block, BlockError>;
 
 /// The constructions that yield dimension d, the preferred one first.
-pub(super) fn constructions(d: usize) -> Vec<(&'static str, Build)> {
+pub(in crate::block) fn constructions(d: usize) -> Vec<(&'static str, Build)> {
     let mut out: Vec<(&'static str, Build)> = Vec::new();
     if d == 6 {
         out.push(("cube-roots", six_level::cube_roots));

@@ -4,7 +4,7 @@
 //! show every pair of symbols once. As a tensor with entry 1 at each row it is perfect.
 
 use crate::block::exact::Exact;
-use crate::block::{Block, BlockError, IsometryTable};
+use crate::block::{Block, BlockError, IsometryTable, Proof};
 use crate::field::{Field, factorise};
 
 type Row = [u32; 4];
@@ -54,6 +54,7 @@ impl Array {
                 Exact::from_roots(dims.clone(), 1, (1, 1), entries)
             },
         )
+        .proven(Proof::Counting)
     }
 }
 

@@ -37,7 +37,7 @@ pub enum Legs {
 }
 
 impl Legs {
-    pub(super) fn admits(self, legs: usize) -> bool {
+    pub(crate) fn admits(self, legs: usize) -> bool {
         match self {
             Legs::Exactly(n) => legs == n,
             Legs::AtLeast(n) => (n..=20).contains(&legs),
@@ -115,4 +115,9 @@ pub(super) fn find(name: &str) -> Option<&'static Family> {
 /// All families of blocks, in the order of `block list`.
 pub fn families() -> &'static [Family] {
     FAMILIES
+}
+
+/// The constructions of four legs at dimension d.
+pub(super) fn four_leg_constructions(d: usize) -> Vec<(&'static str, four_leg::Build)> {
+    four_leg::constructions(d)
 }

@@ -1,12 +1,13 @@
 //! States of one leg.
 
 use super::{Family, Legs};
+use crate::block::gaussian::gaussian;
 use crate::block::{Block, BlockError, Entries, IsometryTable, PrimePart, Request, Stabilizer};
 use crate::field::factorise;
 use crate::tensor::Dense;
 use ndarray::ArrayD;
 use num_complex::Complex64;
-use rand::{Rng, SeedableRng};
+use rand::SeedableRng;
 use rand_chacha::ChaCha8Rng;
 
 pub(super) const BASIS: Family = Family {
@@ -90,14 +91,4 @@ fn random(request: &Request) -> Result<Block, BlockError> {
     let array = ArrayD::from_shape_vec(vec![d], state).expect("one entry a level");
     let entries = Entries::Dense(Dense::Complex(array));
     Ok(Block::ready(&request.family, IsometryTable::perfect(1), None, entries))
-}
-
-/// Independent complex numbers of unit variance (Ann. Math. Stat. 29, 610 (1958)).
-pub(super) fn gaussian(rng: &mut ChaCha8Rng, count: usize) -> Vec<Complex64> {
-    (0..count)
-        .map(|_| {
-            let radius = (-(1.0 - rng.random::<f64>()).ln()).sqrt();
-            Complex64::from_polar(radius, std::f64::consts::TAU * rng.random::<f64>())
-        })
-        .collect()
 }

@@ -1,7 +1,7 @@
 //! A random unitary map from the first half of the legs to the second.
 
-use super::one_leg::gaussian;
 use super::{Family, Legs};
+use crate::block::gaussian::gaussian;
 use crate::block::{Block, BlockError, Request, from_dense};
 use crate::linalg::qr;
 use crate::tensor::Dense;

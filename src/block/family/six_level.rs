@@ -5,7 +5,7 @@
 
 use crate::block::exact::{Exact, ExactValues};
 use crate::block::stabilizer_tensor::{first_failure, legs_of};
-use crate::block::{Block, BlockError, IsometryTable};
+use crate::block::{Block, BlockError, IsometryTable, Proof};
 
 /// Exponents of w = exp(2πi/3), found and proven here.
 const CUBE_ROOTS: [[u32; 6]; 6] = [
@@ -116,5 +116,6 @@ fn prove(name: &str, exact: Exact) -> Result<Block, BlockError> {
     let nonzeros = exact.len() as u128;
     let dims = exact.dims.clone();
     let table = IsometryTable::perfect(legs);
-    Ok(Block::exact_lazy(name, dims, table, None, nonzeros, move || exact.clone()))
+    let block = Block::exact_lazy(name, dims, table, None, nonzeros, move || exact.clone());
+    Ok(block.proven(Proof::Cyclotomic))
 }

@@ -2,7 +2,7 @@
 
 use super::{Family, Legs};
 use crate::block::exact::Exact;
-use crate::block::{Block, BlockError, IsometryTable, Request};
+use crate::block::{Block, BlockError, IsometryTable, Proof, Request};
 
 pub(super) const W: Family = Family {
     name: "w",
@@ -63,5 +63,6 @@ fn dicke(request: &Request, k: usize) -> Result<Block, BlockError> {
             |m: &u64| (0..n).fold(0, |i, leg| i * shape[leg] as u64 + (m >> (n - 1 - leg) & 1));
         let entries = placings.iter().map(|m| (place(m), 0)).collect();
         Exact::from_roots(shape.clone(), 1, (1, count), entries)
-    }))
+    })
+    .proven(Proof::Formula))
 }
