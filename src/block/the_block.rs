@@ -124,6 +124,12 @@ impl Block {
     pub fn proof(&self) -> Proof {
         self.proof
     }
+    /// The same block, the number of its non-zero entries being known beforehand.
+    #[must_use]
+    pub fn with_nonzeros(mut self, nonzeros: u128) -> Self {
+        self.nonzeros = Some(nonzeros);
+        self
+    }
     /// The same block under another name.
     #[must_use]
     pub fn named(mut self, name: impl Into<String>) -> Self {

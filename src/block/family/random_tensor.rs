@@ -1,7 +1,7 @@
 //! A tensor of independent random numbers, for networks whose numbers do not matter.
 
-use super::one_leg::gaussian;
 use super::{Family, Legs};
+use crate::block::gaussian::gaussian;
 use crate::block::{Block, BlockError, Entries, IsometryTable, Request};
 use crate::tensor::Dense;
 use ndarray::ArrayD;
@@ -41,5 +41,6 @@ fn make(request: &Request) -> Result<Block, BlockError> {
         numbers.iter_mut().for_each(|v| *v *= scale);
         let array = ArrayD::from_shape_vec(shape.clone(), numbers).expect("one number an entry");
         Entries::Dense(Dense::Complex(array))
-    }))
+    })
+    .with_nonzeros(size as u128))
 }
