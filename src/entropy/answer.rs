@@ -53,6 +53,8 @@ pub struct Request {
     pub finite_field: bool,
     /// Whether contraction is admitted. Default yes.
     pub contraction: bool,
+    /// Whether an estimate is made where no exact answer fits. Default no.
+    pub estimate: bool,
     /// Seed of the search for contraction orders and of all that is random. Default 0.
     pub seed: u64,
 }
@@ -65,6 +67,7 @@ impl Default for Request {
             seconds: f64::INFINITY,
             finite_field: true,
             contraction: true,
+            estimate: false,
             seed: 0,
         }
     }
@@ -115,6 +118,11 @@ pub struct Part {
     pub error: f64,
     /// What the contraction cost, or would cost.
     pub price: Option<Price>,
+    /// A random estimate of the entropy and its standard error, nats, where one was asked for.
+    pub estimate: Option<(f64, f64)>,
+    /// Rényi entropy of order 2, nats, from four copies: where the spectrum did not fit but
+    /// this did. A lower bound on the entropy.
+    pub renyi2: Option<f64>,
     /// Why it was not solved, where it was not.
     pub reason: Option<Unsolved>,
 }
@@ -149,7 +157,7 @@ impl fmt::Display for Unsolved {
 pub struct Answer {
     /// The minimal cut: an upper bound always.
     pub cut: Cut,
-    /// Proven lower bound, nats. Equal to `upper` unless the evidence is `bounds`.
+    /// Proven lower bound, nats. Equal to `upper` unless the evidence is `estimate` or `bounds`.
     pub lower: f64,
     /// Proven upper bound, nats.
     pub upper: f64,
@@ -168,9 +176,22 @@ pub struct Answer {
 }
 
 impl Answer {
-    /// The entropy in nats, where it is known.
+    /// The entropy in nats, where it is known exactly or within `error`; an estimate is not.
     pub fn entropy(&self) -> Option<f64> {
-        (self.evidence != Evidence::Bounds).then_some(self.upper)
+        (self.evidence < Evidence::Estimate).then_some(self.upper)
+    }
+    /// The estimate in nats and its standard error, where the evidence is `estimate`.
+    pub fn estimate(&self) -> Option<(f64, f64)> {
+        if self.evidence != Evidence::Estimate {
+            return None;
+        }
+        let mut total = (self.straight, 0.0);
+        for part in &self.parts {
+            let (s, e) = part.estimate.unwrap_or((part.upper, part.error));
+            total.0 += s;
+            total.1 += e * e;
+        }
+        Some((total.0, total.1.sqrt()))
     }
     /// Whether the entropy is known and meets the minimal cut within `tolerance` nats; `None`
     /// where the bounds leave it open.
@@ -179,7 +200,7 @@ impl Answer {
             Some(false)
         } else if self.lower >= self.cut.nats - tolerance {
             Some(true)
-        } else if self.evidence == Evidence::Bounds {
+        } else if self.evidence >= Evidence::Estimate {
             None
         } else {
             Some(false)
@@ -221,6 +242,21 @@ pub enum EntropyError {
     /// A finite-field contraction failed.
     #[error(transparent)]
     Stabilizer(#[from] super::stabilizer::StabilizerError),
+    /// Regions that do not suit a measure.
+    #[error("{measure} takes {least} to {most} disjoint regions, but {given} were given{}",
+        .overlap.map_or(String::new(), |(i, j)| format!(", and numbers {i} and {j} overlap")))]
+    Regions {
+        /// The measure.
+        measure: String,
+        /// Fewest regions.
+        least: usize,
+        /// Most regions.
+        most: usize,
+        /// Regions given.
+        given: usize,
+        /// Numbers of two that overlap.
+        overlap: Option<(usize, usize)>,
+    },
     /// A stop was asked for.
     #[error("stopped after {done} of {total} regions")]
     Stopped {

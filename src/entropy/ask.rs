@@ -59,6 +59,10 @@ impl<'w, 'n> Asker<'w, 'n> {
     pub fn new(wires: &'w Wires<'n>, request: Request) -> Self {
         Self { wires, cutter: Cutter::new(wires), request, solved: Mutex::default() }
     }
+    /// The network's wires.
+    pub fn wires(&self) -> &'w Wires<'n> {
+        self.wires
+    }
     /// The budget and the evidence admitted.
     pub fn request(&self) -> &Request {
         &self.request
@@ -208,7 +212,7 @@ impl<'w, 'n> Asker<'w, 'n> {
             };
             answer.parts.push(Part::clone(&part));
         }
-        if answer.evidence == Evidence::Bounds {
+        if answer.evidence >= Evidence::Estimate {
             answer.upper = answer.upper.min(answer.cut.nats).max(answer.lower);
         }
         if answer.evidence == Evidence::Geometry {

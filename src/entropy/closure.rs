@@ -156,6 +156,12 @@ impl<'w, 'n> Front<'w, 'n> {
             steps.push((self.side, node));
         }
     }
+    /// Looks again at one node: what was barred before may be open now.
+    pub fn wake_node(&mut self, node: u32) {
+        if (self.left[node as usize] as usize) < self.wires.wires_of(node as usize).len() {
+            self.queue.push_back(node);
+        }
+    }
     /// Looks again at every node that it touches: what was barred before may be open now.
     fn wake(&mut self) {
         for n in 0..self.wires.nodes() {

@@ -2,17 +2,16 @@
 
 use super::Spectrum;
 use super::answer::{EntropyError, Price, Request, Unsolved};
+use super::decompose::singular_values;
 use super::sectors::Sectors;
 use super::solve::Solved;
 use super::the_core::Piece;
 use crate::block::{Block, Entries};
 use crate::contract::{self, Problem};
-use crate::linalg::{self, Scalar};
 use crate::network::TensorId;
 use crate::order::{self, Found, Shape};
 use crate::tensor::Dense;
 use crate::watch::Watch;
-use ndarray::{ArrayD, ArrayView2, Ix2};
 use std::sync::Arc;
 
 /// Singular values below this times the greatest are taken for zeros.
@@ -80,11 +79,12 @@ fn price(
     let found = order::search(shape, &order, watch)?;
     let short = log2_rows.min(log2_columns);
     // About 8/3·m·n² real multiply-adds for the singular values of a block, four times that
-    // where it is complex; blocks that a shift relates are solved once.
-    let (blocks, different) = sectors.count();
-    let log10_decomposition =
-        (log2_rows + log2_columns + short - 3.0 * blocks.log2() + different.log2()) * 2f64.log10()
-            + if complex { 1.0 } else { 0.4 };
+    // where it is complex; blocks that a shift relates are solved once, and a shift that keeps
+    // a block splits it further.
+    let (blocks, different, split) = sectors.count();
+    let log2_triples = log2_rows + log2_columns + short - 3.0 * blocks.log2();
+    let log10_decomposition = (log2_triples + different.log2() - 2.0 * split.log2()) * 2f64.log10()
+        + if complex { 1.0 } else { 0.4 };
     let matrix = log2_rows + log2_columns + log2_element;
     let work = matrix - 2.0 * blocks.log2() + 2.0;
     let price = Price {
@@ -104,71 +104,5 @@ fn is_real(block: &Block) -> bool {
         Entries::Dense(Dense::Real(_)) => true,
         Entries::Dense(Dense::Complex(a)) => a.iter().all(|x| x.im == 0.0),
         Entries::Sparse(s) => s.value().iter().all(|x| x.im == 0.0),
-    }
-}
-
-/// Singular values of a tensor read as a matrix whose first axes make `rows` rows, block by
-/// block of its zero pattern; of blocks that shifts carry onto each other one is decomposed.
-fn singular_values<T: Scalar>(
-    a: &ArrayD<T>,
-    rows: usize,
-    sectors: &Sectors,
-) -> Result<Vec<f64>, EntropyError> {
-    let columns = a.len() / rows.max(1);
-    let flat = a.as_standard_layout();
-    let matrix: ArrayView2<'_, T> = flat
-        .view()
-        .into_shape_with_order((rows, columns))
-        .expect("the axes of one side make the rows")
-        .into_dimensionality::<Ix2>()
-        .expect("two axes");
-    let patches = linalg::blocks(&matrix, 0.0);
-    let same_as = related(&patches, rows, sectors);
-    let mut solved: Vec<Vec<f64>> = Vec::with_capacity(patches.len());
-    for (k, patch) in patches.iter().enumerate() {
-        let values = if same_as[k] < k {
-            solved[same_as[k]].clone()
-        } else {
-            linalg::singular_values(&patch.of(&matrix).view())?
-        };
-        solved.push(values);
-    }
-    Ok(solved.into_iter().flatten().collect())
-}
-
-/// For each block the first one that shifts carry onto it. A shift counts only where it
-/// carries all rows of a block onto all rows of one other with as many columns.
-fn related(patches: &[linalg::Patch], rows: usize, sectors: &Sectors) -> Vec<usize> {
-    let mut of_row = vec![usize::MAX; rows];
-    for (k, patch) in patches.iter().enumerate() {
-        for &r in &patch.rows {
-            of_row[r] = k;
-        }
-    }
-    let mut same_as: Vec<usize> = (0..patches.len()).collect();
-    // Blocks are few and shifts fewer: repeated passes settle the classes.
-    loop {
-        let mut moved = false;
-        for shift in sectors.shifts() {
-            for (k, patch) in patches.iter().enumerate() {
-                let to = of_row[sectors.shifted_row(patch.rows[0], shift)];
-                if to == usize::MAX || same_as[to] == same_as[k] {
-                    continue;
-                }
-                let other = &patches[to];
-                let onto = other.rows.len() == patch.rows.len()
-                    && other.columns.len() == patch.columns.len()
-                    && patch.rows.iter().all(|&r| of_row[sectors.shifted_row(r, shift)] == to);
-                if onto {
-                    let low = same_as[to].min(same_as[k]);
-                    same_as[to] = low;
-                    same_as[k] = low;
-                    moved = true;
-                }
-            }
-        }
-        if !moved {
-            return same_as;
-        }
     }
 }

@@ -38,6 +38,19 @@ impl Weights {
     }
 }
 
+/// Weights of labels as whole numbers, and what one unit is in nats.
+pub(super) fn weights(wires: &Wires<'_>) -> (Vec<u64>, f64) {
+    let weights = Weights::of(wires);
+    let network = wires.network();
+    let unit = weights
+        .of_label
+        .iter()
+        .enumerate()
+        .find(|(_, w)| **w > 0)
+        .map_or(0.0, |(l, &w)| (network.dim(Label::new(l as u32)) as f64).ln() / w as f64);
+    (weights.of_label, unit)
+}
+
 fn gcd(a: u64, b: u64) -> u64 {
     if b == 0 { a } else { gcd(b, a % b) }
 }

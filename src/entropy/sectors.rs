@@ -126,9 +126,10 @@ impl Sectors {
             region_legs: piece.region_legs,
         }
     }
-    /// Sectors that the charges alone tell apart, and how many of them no shift relates: the
-    /// numbers of blocks and of different blocks, at least.
-    pub(super) fn count(&self) -> (f64, f64) {
+    /// Sectors that the charges alone tell apart; how many of them no shift relates; and into
+    /// how many parts the shifts that keep a sector split it. The actual blocks can only be
+    /// smaller.
+    pub(super) fn count(&self) -> (f64, f64, f64) {
         let mut on_region = Howell::new(self.charges.len(), self.modulus);
         for leg in 0..self.region_legs {
             on_region.insert(self.charges.iter().map(|q| q[leg]).collect());
@@ -137,7 +138,33 @@ impl Sectors {
         for s in &self.shifts {
             moved.insert(self.charges.iter().map(|q| self.product(q, s)).collect());
         }
-        (on_region.size(), on_region.size() / moved.size())
+        let split = self.keeping().map_or(1.0, |s| f64::from(self.order(&s)));
+        (on_region.size(), on_region.size() / moved.size(), split)
+    }
+    /// The shift of greatest order among the multiples of the basis that leave the charge of
+    /// the region's legs alone and that have one order on both sides.
+    pub(super) fn keeping(&self) -> Option<Vec<u32>> {
+        let m = self.modulus;
+        let mut best: Option<(u32, Vec<u32>)> = None;
+        for s in &self.shifts {
+            for c in 1..m {
+                let mut t = s.clone();
+                scale(&mut t, c, m);
+                let order = self.order(&t);
+                let one_order =
+                    [&t[..self.region_legs], &t[self.region_legs..]].map(|half| order_of(half, m));
+                if order > best.as_ref().map_or(1, |b| b.0)
+                    && one_order == [order; 2]
+                    && self.charges.iter().all(|q| self.product(q, &t) == 0)
+                {
+                    best = Some((order, t));
+                }
+            }
+        }
+        best.map(|b| b.1)
+    }
+    fn order(&self, shift: &[u32]) -> u32 {
+        order_of(shift, self.modulus)
     }
     fn product(&self, q: &[u32], s: &[u32]) -> u32 {
         let sum: u64 = (0..self.region_legs).map(|k| u64::from(q[k]) * u64::from(s[k])).sum();
@@ -149,9 +176,16 @@ impl Sectors {
     }
     /// Row-major index of the region's legs after a shift.
     pub(super) fn shifted_row(&self, row: usize, shift: &[u32]) -> usize {
+        self.shifted(row, &shift[..self.region_legs])
+    }
+    /// Row-major index of the complement's legs after a shift.
+    pub(super) fn shifted_column(&self, column: usize, shift: &[u32]) -> usize {
+        self.shifted(column, &shift[self.region_legs..])
+    }
+    fn shifted(&self, index: usize, shift: &[u32]) -> usize {
         let m = self.modulus as usize;
-        let (mut rest, mut out, mut factor) = (row, 0, 1);
-        for k in (0..self.region_legs).rev() {
+        let (mut rest, mut out, mut factor) = (index, 0, 1);
+        for k in (0..shift.len()).rev() {
             let v = (rest % m + shift[k] as usize) % m;
             rest /= m;
             out += v * factor;
@@ -307,6 +341,11 @@ impl Howell {
             .filter_map(|(c, r)| r.as_ref().map(|r| f64::from(self.m / r[c])))
             .product()
     }
+}
+
+/// The least n > 0 with n·shift = 0.
+fn order_of(shift: &[u32], m: u32) -> u32 {
+    m / shift.iter().fold(m, |g, &v| gcd(v, g))
 }
 
 fn gcd(a: u32, b: u32) -> u32 {

@@ -5,6 +5,8 @@ use super::answer::{EntropyError, Evidence, Part, Price, Request, Unsolved};
 use super::bounds::bounds;
 use super::closure::reach;
 use super::contraction::by_contraction;
+use super::copies::renyi2;
+use super::estimate::estimate;
 use super::stabilizer;
 use super::the_core::Piece;
 use super::wires::Wires;
@@ -36,6 +38,8 @@ pub(super) fn solve(
         spectrum: Some(Spectrum::flat(0.0)),
         error: 0.0,
         price: None,
+        estimate: None,
+        renyi2: None,
         reason: None,
     };
     let one_sided = piece.region_legs == 0 || piece.region_legs == network.boundary().len();
@@ -75,6 +79,20 @@ pub(super) fn solve(
             part.spectrum = None;
             part.price = price;
             part.reason = Some(reason);
+            if request.contraction && !one_sided && reason != Unsolved::Time {
+                part.renyi2 = renyi2(piece, request, watch)?;
+                // S₂ ≤ S; the allowance covers the rounding of two contractions.
+                if let Some(s) = part.renyi2 {
+                    part.lower = part.lower.max(s - 1e-9).min(part.upper);
+                }
+                if request.estimate {
+                    part.estimate = estimate(piece, request, watch)?;
+                    if let Some((_, error)) = part.estimate {
+                        part.evidence = Evidence::Estimate;
+                        part.error = error;
+                    }
+                }
+            }
         }
     }
     Ok(part)

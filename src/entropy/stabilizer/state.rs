@@ -2,6 +2,7 @@
 
 use super::digits::{Bits, Packing, Plain, Trits};
 use super::tableau::Tableau;
+use crate::field::{Field, Matrix};
 
 /// A stabilizer state on the open legs of a network, in the digits of one prime.
 ///
@@ -86,6 +87,42 @@ impl State {
             let mut part = t.select(columns);
             let all: Vec<usize> = (0..columns.len()).collect();
             part.echelon(&all, false)
+        })
+    }
+    /// Maximally entangled pairs of digits between A (`a`) and the rest of A ∪ B (`both`), one
+    /// flag an open leg: half the rank of the commutators, on A, of the elements supported on
+    /// A ∪ B. The logarithmic negativity is this times ln p.
+    pub fn negative_pairs(&self, a: &[bool], both: &[bool]) -> usize {
+        let columns = |keep: &dyn Fn(usize) -> bool| -> Vec<usize> {
+            (0..self.legs()).filter(|&l| keep(l)).flat_map(|l| self.columns(l)).collect()
+        };
+        let outside = columns(&|l| !both[l]);
+        let on_a = columns(&|l| a[l] && both[l]);
+        each!(&self.rows, t => {
+            let mut t = t.clone();
+            let rank = t.echelon(&outside, false);
+            let p = u64::from(self.prime);
+            let rows: Vec<usize> = (rank..t.rows()).collect();
+            let commutators: Vec<Vec<u32>> = rows
+                .iter()
+                .map(|&r| {
+                    rows.iter()
+                        .map(|&s| {
+                            let sum: u64 = on_a
+                                .iter()
+                                .map(|&c| {
+                                    let (xr, zr) = (u64::from(t.x(r, c)), u64::from(t.z(r, c)));
+                                    let (xs, zs) = (u64::from(t.x(s, c)), u64::from(t.z(s, c)));
+                                    xr * zs + (p - zr) % p * xs
+                                })
+                                .sum();
+                            (sum % p) as u32
+                        })
+                        .collect()
+                })
+                .collect();
+            let field = Field::new(p).expect("a prime is the order of a field");
+            Matrix::from_rows(&field, rows.len(), &commutators).rank() / 2
         })
     }
     /// Entropy between the open legs with a flag and the others, in digits of the prime:
