@@ -4,8 +4,8 @@ use super::common::write_file;
 use super::{Common, Failure, Verdict, show};
 use crate::network::import::{GraphFormat, GraphReading, einsum, read_graph};
 use crate::network::{
-    ChainRecipe, CompleteRecipe, Format, GeometricRecipe, LatticeKind, LatticeOpen, LatticeRecipe,
-    LayeredKind, LayeredRecipe, LayeredTop, Limits, NamedBlock, Network, Recipe, RegularRecipe,
+    BlockSource, ChainRecipe, CompleteRecipe, Format, GeometricRecipe, LatticeKind, LatticeOpen,
+    LatticeRecipe, LayeredKind, LayeredRecipe, LayeredTop, Limits, Network, Recipe, RegularRecipe,
     RootLeg, Selection, TilingRecipe, TreeRecipe, Turns, WormholeRecipe, save, to_bytes,
 };
 use crate::tiling::{Centre, Growth, Rule, Tiling};
@@ -103,7 +103,8 @@ struct TilingArgs {
     #[arg(long)]
     keep_last: bool,
     /// Block of every tile; several alternate by ring. Without it a tile gets the perfect
-    /// block with as many legs as it needs
+    /// block with as many legs as it needs. Here and elsewhere a name that ends in .npy is an
+    /// array file, relative to the folder of --out
     #[arg(long, value_name = "NAME", value_delimiter = ',')]
     block: Vec<String>,
     /// Tiles with a bulk leg: none, all, centre, rings:0,2 or tiles:3,5..8
@@ -112,7 +113,7 @@ struct TilingArgs {
     /// Dimension of the bulk legs, where it is not that of the others
     #[arg(long, value_name = "D")]
     bulk_dimension: Option<usize>,
-    /// State to which every bulk leg is fixed: basis, plus or random-state
+    /// State to which every bulk leg is fixed: basis, plus, random-state or a .npy file
     #[arg(long, value_name = "NAME")]
     bulk_state: Option<String>,
     /// Tiles to take out, as for --bulk; what lay beside them becomes boundary
@@ -435,8 +436,17 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
     deliver(&recipe, output, common)
 }
 
-fn named(family: Option<&String>) -> Option<NamedBlock> {
-    family.map(NamedBlock::family)
+/// A block by name, or an array file where the text ends in `.npy`.
+fn source(text: &String) -> BlockSource {
+    if text.ends_with(".npy") {
+        BlockSource::Array(text.clone())
+    } else {
+        BlockSource::family(text)
+    }
+}
+
+fn named(text: Option<&String>) -> Option<BlockSource> {
+    text.map(source)
 }
 
 impl GraphArgs {
@@ -485,7 +495,7 @@ impl EinsumArgs {
                 return Err(Failure::new(format!("--size gives two sizes for {label:?}")));
             }
         }
-        let folder = self.output.out.as_deref().and_then(Path::parent).unwrap_or(Path::new(""));
+        let folder = self.output.folder();
         let network = einsum(
             &self.output.name_or("einsum"),
             &self.expression,
@@ -584,7 +594,7 @@ impl TilingArgs {
             },
         };
         let mut recipe = TilingRecipe::new(growth);
-        let mut blocks: Vec<_> = self.block.iter().map(NamedBlock::family).collect();
+        let mut blocks: Vec<_> = self.block.iter().map(source).collect();
         if blocks.len() == 1 {
             recipe.block = blocks.pop();
         } else {
@@ -593,7 +603,7 @@ impl TilingArgs {
         recipe.turns = Turns(self.turn.clone());
         recipe.bulk = select(&self.bulk, "--bulk")?;
         recipe.bulk_dimension = self.bulk_dimension;
-        recipe.bulk_state = self.bulk_state.as_ref().map(NamedBlock::family);
+        recipe.bulk_state = named(self.bulk_state.as_ref());
         recipe.remove = select(&self.remove, "--remove")?;
         Ok(recipe)
     }
@@ -603,7 +613,8 @@ fn deliver(recipe: &Recipe, output: &Output, common: &Common) -> Result<Verdict,
     let limits = output.limits();
     let name = output.name_or(recipe.to_table().0);
     // The network is made in any case: a recipe that cannot be made is not written.
-    let network = recipe.network(&name, Some(output.dimension as usize), &limits)?;
+    let dimension = Some(output.dimension as usize);
+    let network = recipe.network_beside(&name, dimension, output.folder(), &limits)?;
     if !output.recipe {
         return deliver_network(&network, output, common);
     }
@@ -637,6 +648,10 @@ fn deliver_network(
 }
 
 impl Output {
+    /// Where array files are looked for.
+    fn folder(&self) -> &Path {
+        self.out.as_deref().and_then(Path::parent).unwrap_or(Path::new(""))
+    }
     fn limits(&self) -> Limits {
         Limits { tensors: self.most_tensors, ..Limits::default() }
     }

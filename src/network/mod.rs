@@ -23,9 +23,9 @@ pub use frames::tile_frames;
 pub use ids::{BoundarySite, TensorId};
 pub use limits::{Limits, Overrides};
 pub use recipe::{
-    ChainRecipe, CompleteRecipe, GeometricRecipe, LatticeKind, LatticeOpen, LatticeRecipe,
-    LayeredKind, LayeredRecipe, LayeredTop, Recipe, RegularRecipe, RootLeg, Selection, TileRule,
-    TilingRecipe, TreeRecipe, Turns, WormholeRecipe,
+    ChainRecipe, CompleteRecipe, FILE_KEYS, GeometricRecipe, LatticeKind, LatticeOpen,
+    LatticeRecipe, LayeredKind, LayeredRecipe, LayeredTop, Recipe, RegularRecipe, RootLeg,
+    Selection, TileRule, TilingRecipe, TreeRecipe, Turns, WormholeRecipe,
 };
 pub use region::{Region, RegionError};
 pub use source::{BlockSource, NamedBlock};

@@ -80,3 +80,31 @@ pub enum BlockSource {
     /// Literal numbers, row-major.
     Values(Vec<Complex64>),
 }
+
+impl BlockSource {
+    /// The family with its defaults.
+    pub fn family(family: impl Into<String>) -> Self {
+        Self::Named(NamedBlock::family(family))
+    }
+    /// As it stands in a recipe: a block's name, a table with `family` and settings, or a table
+    /// with `array` and a file. Nothing where it is none of these.
+    pub fn from_value(value: &Value) -> Option<Self> {
+        if let Value::Object(map) = value
+            && let Some(file) = map.get("array")
+        {
+            return (map.len() == 1).then(|| Some(Self::Array(file.as_str()?.to_owned())))?;
+        }
+        NamedBlock::from_value(value).map(Self::Named)
+    }
+    /// The inverse of [`Self::from_value`]. Literal values, which no recipe holds, become a
+    /// list.
+    pub fn to_value(&self) -> Value {
+        match self {
+            Self::Named(named) => named.to_value(),
+            Self::Array(file) => serde_json::json!({ "array": file }),
+            Self::Values(values) => {
+                values.iter().map(|v| serde_json::json!([v.re, v.im])).collect()
+            }
+        }
+    }
+}

@@ -211,6 +211,42 @@ pub fn frames(patch: &Patch) -> Option<Vec<Frame>> {
     Some(frames)
 }
 
+/// Where the tiles of a hyperbolic patch of several kinds of polygons lie, all edges of one
+/// length: the one at which `around` corners, the polygons by turns, make a full turn. Exact
+/// where they do at every vertex (pentagons and hexagons by turns); else nearly so, with gaps
+/// between the branches of the patch. Nothing where such polygons are not hyperbolic.
+pub fn mixed_frames(patch: &Patch, polygons: &[u32]) -> Option<Vec<Frame>> {
+    let share = f64::from(patch.around()) / polygons.len() as f64;
+    // The angle at a corner falls as the edge grows; c is the cosh of half of it.
+    let turn = |c: f64| -> f64 {
+        let corner = |&p: &u32| 2.0 * ((PI / f64::from(p)).cos() / c).asin();
+        share * polygons.iter().map(corner).sum::<f64>()
+    };
+    if turn(1.0) <= 2.0 * PI + 1e-9 {
+        return None;
+    }
+    let (mut low, mut high) = (1.0, 1e6);
+    for _ in 0..200 {
+        let middle = f64::midpoint(low, high);
+        if turn(middle) > 2.0 * PI { low = middle } else { high = middle }
+    }
+    let half = low.acosh();
+    let inradius = |p: u32| (half.tanh() / (PI / f64::from(p)).tan()).asinh();
+    let c = Curvature::Hyperbolic;
+    let mut frames = vec![Frame::turn(c, -PI / 2.0)];
+    for tile in 1..patch.tiles() as u32 {
+        let side = patch.number(super::Side { tile, side: 0 });
+        let parent = patch.side(patch.glued(side).expect("side 0 lies on an earlier tile"));
+        let (p, q) = (patch.sides_of(parent.tile), patch.sides_of(tile));
+        let distance = ((inradius(p) + inradius(q)) / 2.0).tanh();
+        let there = Frame::turn(c, side_angle(p, parent.side))
+            .after(&Frame::shift(c, distance))
+            .after(&Frame::turn(c, PI));
+        frames.push(frames[parent.tile as usize].after(&there));
+    }
+    Some(frames)
+}
+
 /// The corners of a tile, counter-clockwise; side s runs from corner s to corner s + 1.
 pub fn tile_vertices(tiling: Tiling, frame: &Frame) -> Vec<[f64; 2]> {
     let p = tiling.polygon();

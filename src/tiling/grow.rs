@@ -72,19 +72,38 @@ impl Growth {
     }
 }
 
-/// Grows a patch of at most `limit` tiles. Time and memory are linear in the number of sides.
+/// Most of what a patch may have.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Bounds {
+    /// Most tiles.
+    pub tiles: u64,
+    /// Most sides of all tiles together.
+    pub sides: u64,
+}
+
+/// Grows a patch of at most `limit` tiles and 2^28 sides. Time and memory are linear in the
+/// number of sides.
 ///
 /// # Errors
-/// [`TilingError`]; a patch that would exceed the limit by far is refused from the growth of
-/// its first rings.
+/// [`TilingError`]; a patch that would exceed the limit is refused before its last ring, and
+/// one that would exceed it by far from the growth of its first rings.
 pub fn grow(growth: &Growth, limit: u64) -> Result<Patch, TilingError> {
+    grow_within(growth, Bounds { tiles: limit, sides: 1 << 28 })
+}
+
+/// Like [`grow`], with both bounds given.
+///
+/// # Errors
+/// As for [`grow`].
+pub fn grow_within(growth: &Growth, bounds: Bounds) -> Result<Patch, TilingError> {
+    let limit = bounds.tiles;
     if growth.polygons.is_empty() {
         return Err(TilingError::NoPolygon);
     }
     for &p in &growth.polygons {
         Tiling::new(u64::from(p), u64::from(growth.around))?;
     }
-    let mut rim = Rim::new(growth, limit)?;
+    let mut rim = Rim::new(growth, bounds)?;
     let mut sizes: Vec<u64> = vec![u64::from(rim.tiles)];
     for ring in 1..=growth.rings {
         if rim.rim_length == 0 {
@@ -97,6 +116,7 @@ pub fn grow(growth: &Growth, limit: u64) -> Result<Patch, TilingError> {
         }
         let before = rim.tiles;
         rim.begin_ring(growth.polygon_of_ring(ring));
+        rim.room(rim.expected())?;
         match growth.rule {
             Rule::Vertex => rim.ring_by_vertices()?,
             Rule::Edge => rim.ring_by_edges()?,
@@ -133,7 +153,7 @@ const COUNT: u32 = OLD - 1;
 
 struct Rim<'a> {
     growth: &'a Growth,
-    limit: u64,
+    bounds: Bounds,
     around: u32,
     sides: u32,
     rings: Vec<Ring>,
@@ -150,11 +170,11 @@ struct Rim<'a> {
 }
 
 impl<'a> Rim<'a> {
-    fn new(growth: &'a Growth, limit: u64) -> Result<Self, TilingError> {
+    fn new(growth: &'a Growth, bounds: Bounds) -> Result<Self, TilingError> {
         let p = growth.polygon_of_ring(0);
         let mut rim = Self {
             growth,
-            limit,
+            bounds,
             around: growth.around,
             sides: p,
             rings: vec![Ring { first_tile: 0, first_side: 0, sides: p }],
@@ -168,6 +188,7 @@ impl<'a> Rim<'a> {
             cursor: 0,
         };
         if growth.centre == Centre::Vertex {
+            rim.room(u64::from(growth.around - 1))?;
             rim.start[0] |= OLD;
             rim.old_left = 1;
             rim.complete_old()?;
@@ -223,14 +244,44 @@ impl<'a> Rim<'a> {
         Ok(())
     }
 
-    /// Lays a tile on an open side.
-    fn lay(&mut self, on: u32) -> Result<(), TilingError> {
-        let p = self.sides;
-        let base = self.glue.len() as u64;
-        if u64::from(self.tiles) >= self.limit || base + u64::from(p) >= u64::from(OPEN) {
+    /// Tiles that the next ring will have: at a vertex where m tiles are missing they are m − 1
+    /// beside those counted at its neighbours. Too many only where the patch closes up.
+    fn expected(&self) -> u64 {
+        if self.growth.rule == Rule::Edge {
+            // A vertex where one tile is missing has it on both of its sides.
+            return u64::from(self.rim_length).div_ceil(2);
+        }
+        let mut sum = 0;
+        let mut at = self.cursor;
+        for _ in 0..self.rim_length {
+            sum += u64::from(self.around - (self.start[at as usize] & COUNT) - 1);
+            at = self.next[at as usize];
+        }
+        sum
+    }
+
+    /// Refuses `more` tiles that would exceed the bounds.
+    fn room(&self, more: u64) -> Result<(), TilingError> {
+        let sides = self.glue.len() as u64 + more.saturating_mul(u64::from(self.sides));
+        if u64::from(self.tiles) + more > self.bounds.tiles {
             return Err(self.too_many());
         }
-        let base = base as u32;
+        let limit = self.bounds.sides.min(u64::from(OPEN) - 1);
+        if sides > limit {
+            return Err(TilingError::TooManySides {
+                tiling: Patch::describe(&self.growth.polygons, self.around),
+                rings: self.growth.rings,
+                limit,
+            });
+        }
+        Ok(())
+    }
+
+    /// Lays a tile on an open side.
+    fn lay(&mut self, on: u32) -> Result<(), TilingError> {
+        self.room(1)?;
+        let p = self.sides;
+        let base = self.glue.len() as u32;
         let (first, last) = (base + 1, base + p - 1);
         let (before, after) = (self.prev[on as usize], self.next[on as usize]);
         self.glue.push(on);
@@ -325,7 +376,7 @@ impl<'a> Rim<'a> {
         TilingError::TooManyTiles {
             tiling: Patch::describe(&self.growth.polygons, self.around),
             rings: self.growth.rings,
-            limit: self.limit,
+            limit: self.bounds.tiles,
         }
     }
 

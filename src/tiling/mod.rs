@@ -9,6 +9,6 @@ mod grow;
 mod patch;
 mod regular;
 
-pub use grow::{Centre, Growth, Rule, grow};
+pub use grow::{Bounds, Centre, Growth, Rule, grow, grow_within};
 pub use patch::{Patch, Side};
 pub use regular::{Curvature, Tiling, TilingError};

@@ -37,6 +37,18 @@ pub enum TilingError {
         /// The limit.
         limit: u64,
     },
+    /// More sides than the limit.
+    #[error(
+        "the tiles of {tiling} with {rings} rings have more than {limit} sides, the limit; ask for fewer rings"
+    )]
+    TooManySides {
+        /// The tiling, as `{p,q}`.
+        tiling: String,
+        /// Rings asked for.
+        rings: u32,
+        /// The limit.
+        limit: u64,
+    },
     /// A sphere is full before the last ring.
     #[error(
         "{tiling} closes into a sphere of {tiles} tiles after {possible} rings; {rings} rings were asked for"

@@ -1,7 +1,7 @@
 //! The blocks of one file: each distinct one is made once and shared.
 
 use super::Problem;
-use crate::block::{self, Block};
+use crate::block::{self, Block, Entries, IsometryTable};
 use crate::network::limits::Limits;
 use crate::network::source::{BlockSource, NamedBlock};
 use crate::tensor::Dense;
@@ -75,6 +75,15 @@ impl BlockShelf {
                     });
                 }
                 let name = format!("values of {}", tensor());
+                if let ([], [value]) = (dims, &values[..]) {
+                    let entries = Entries::Dense(dense(&[*value], dims));
+                    return Ok(Arc::new(Block::ready(
+                        name,
+                        IsometryTable::unknown(0),
+                        None,
+                        entries,
+                    )));
+                }
                 block::from_dense(name, dense(values, dims), TOLERANCE)
                     .map(Arc::new)
                     .map_err(|reason| Problem::Block { tensor: tensor(), reason: Box::new(reason) })

@@ -7,7 +7,8 @@ mod blocks;
 mod keys;
 mod problem;
 pub(in crate::network) mod raw;
-mod read;
+pub(in crate::network) mod read;
+mod study;
 mod write;
 
 pub(in crate::network) use blocks::BlockShelf;

@@ -13,9 +13,10 @@ use std::collections::BTreeMap;
 use std::fmt;
 
 /// Keys of a network file that are no recipe.
-const PLAIN: [&str; 9] =
+pub(in crate::network) const PLAIN: [&str; 9] =
     ["lierne", "name", "dimension", "boundary", "bulk", "summed", "legs", "layout", "tensor"];
-const TENSOR: [&str; 6] = ["name", "legs", "block", "array", "values", "at"];
+/// Keys of one tensor.
+pub(in crate::network) const TENSOR: [&str; 6] = ["name", "legs", "block", "array", "values", "at"];
 
 /// What stood in the file.
 #[derive(Debug, Default)]
@@ -38,6 +39,8 @@ pub(super) struct Raw {
     last_named: Option<(String, u32)>,
     /// Place and direction of each tensor; empty where none is given.
     pub at: Vec<[f64; 3]>,
+    /// Whether directions are given, too.
+    pub angled: bool,
     pub layout: Option<Map<String, Value>>,
     pub recipe: Option<(&'static str, Value)>,
 }
@@ -472,7 +475,10 @@ impl<'de> Visitor<'de> for OneTensor<'_> {
                     let place: Vec<f64> = map.next_value()?;
                     at = match place[..] {
                         [x, y] => Some([x, y, 0.0]),
-                        [x, y, angle] => Some([x, y, angle]),
+                        [x, y, angle] => {
+                            raw.angled = true;
+                            Some([x, y, angle])
+                        }
                         _ => {
                             let message = "at must be [x, y] or [x, y, angle]";
                             return Err(syntax(slot, message.into()));

@@ -1,6 +1,7 @@
 //! From a file to a checked network.
 
 use super::raw::{Raw, Reader};
+use super::study::{may_be_study, network_of_study};
 use super::{BlockShelf, FileError, Problem};
 use crate::network::limits::{Limits, Overrides};
 use crate::network::recipe::{self, LegDims, Setting};
@@ -13,7 +14,8 @@ use std::fs::File;
 use std::io::{BufReader, Read};
 use std::path::Path;
 
-/// Reads a network file (`.toml` or `.json`), expanding a recipe where it holds one.
+/// Reads a network file (`.toml` or `.json`), expanding a recipe where it holds one; of a study
+/// file, the one network that it holds.
 ///
 /// Memory is bounded by the network: a JSON file is read as a stream. Time is linear.
 ///
@@ -32,21 +34,51 @@ pub fn load_with(
     limits: &Limits,
     overrides: &Overrides,
 ) -> Result<Network, FileError> {
+    if path.extension().is_some_and(|e| e == "toml") {
+        let text = read_text(path, limits).map_err(|problem| problem.at(path, None))?;
+        if may_be_study(&text)
+            && let Some(network) = network_of_study(path, &text, limits, overrides)
+        {
+            return network;
+        }
+        return finish(path, limits, overrides, |raw| read_toml(&text, limits, raw));
+    }
+    load_plain(path, limits, overrides)
+}
+
+/// Reads a file that holds a network itself.
+pub(super) fn load_plain(
+    path: &Path,
+    limits: &Limits,
+    overrides: &Overrides,
+) -> Result<Network, FileError> {
+    match path.extension().and_then(|e| e.to_str()) {
+        Some("json") => finish(path, limits, overrides, |raw| read_json(path, limits, raw)),
+        Some("toml") => {
+            let text = read_text(path, limits).map_err(|problem| problem.at(path, None))?;
+            finish(path, limits, overrides, |raw| read_toml(&text, limits, raw))
+        }
+        _ => Err(Problem::Extension.at(path, None)),
+    }
+}
+
+fn finish(
+    path: &Path,
+    limits: &Limits,
+    overrides: &Overrides,
+    read: impl FnOnce(&mut Raw) -> Outcome,
+) -> Result<Network, FileError> {
     let mut raw = Raw::default();
-    let (line, read) = match path.extension().and_then(|e| e.to_str()) {
-        Some("json") => read_json(path, limits, &mut raw),
-        Some("toml") => read_toml(path, limits, &mut raw),
-        _ => (None, Err(Problem::Extension)),
-    };
-    let folder = path.parent().unwrap_or(Path::new(""));
-    read.and_then(|()| {
+    let (line, outcome) = read(&mut raw);
+    let versioned = outcome.and_then(|()| {
         if raw.versioned {
             Ok(())
         } else {
             Err(Problem::MissingKey { key: "lierne", place: "the file".into() })
         }
-    })
-    .map_err(|problem| problem.at(path, line))?;
+    });
+    versioned.map_err(|problem| problem.at(path, line))?;
+    let folder = path.parent().unwrap_or(Path::new(""));
     let stem = path.file_stem().map(|s| s.to_string_lossy().into_owned()).unwrap_or_default();
     build(raw, folder, &stem, limits, overrides).map_err(|problem| problem.at(path, None))
 }
@@ -125,30 +157,25 @@ fn read_json(path: &Path, limits: &Limits, raw: &mut Raw) -> Outcome {
     }
 }
 
-fn read_toml(path: &Path, limits: &Limits, raw: &mut Raw) -> Outcome {
+fn read_text(path: &Path, limits: &Limits) -> Result<String, Problem> {
     let advice = "; larger networks are read from JSON";
     let mut bytes = Vec::new();
-    let read = open(path, limits.toml_bytes, advice).and_then(|file| {
-        file.take(limits.toml_bytes)
-            .read_to_end(&mut bytes)
-            .map_err(|reason| Problem::Unreadable { reason })
-    });
-    if let Err(problem) = read {
-        return (None, Err(problem));
-    }
-    let text = match std::str::from_utf8(&bytes) {
-        Ok(text) => text,
-        Err(e) => return (None, Err(Problem::Encoding { at: e.valid_up_to() })),
-    };
+    open(path, limits.toml_bytes, advice)?
+        .take(limits.toml_bytes)
+        .read_to_end(&mut bytes)
+        .map_err(|reason| Problem::Unreadable { reason })?;
+    String::from_utf8(bytes).map_err(|e| Problem::Encoding { at: e.utf8_error().valid_up_to() })
+}
+
+fn read_toml(text: &str, limits: &Limits, raw: &mut Raw) -> Outcome {
     let mut slot = None;
     let reader = Reader { raw, slot: &mut slot, limits, recipes: recipe::FAMILIES };
     let read = toml::Deserializer::parse(text).and_then(|d| reader.deserialize(d));
     match read {
         Ok(()) => (None, Ok(())),
         Err(e) => {
-            let line = e.span().map(|s| {
-                1 + bytes[..s.start.min(bytes.len())].iter().filter(|&&b| b == b'\n').count()
-            });
+            let before = |s: std::ops::Range<usize>| &text.as_bytes()[..s.start.min(text.len())];
+            let line = e.span().map(|s| 1 + before(s).iter().filter(|&&b| b == b'\n').count());
             let message = e.message().trim().replace('\n', "; ");
             (line, settle(Err(format!("not a network in TOML: {message}")), slot))
         }
@@ -294,7 +321,7 @@ fn dims_of_arrays(raw: &Raw, dims: &mut [usize], shelf: &mut BlockShelf) -> Resu
     Ok(())
 }
 
-const LAYOUT: &[&str] = &["tiling", "rings", "sheets", "cycles"];
+pub(in crate::network) const LAYOUT: &[&str] = &["tiling", "rings", "sheets", "cycles"];
 
 fn layout(raw: &Raw) -> Result<Option<Layout>, Problem> {
     let mut layout = Layout::default();
@@ -304,7 +331,9 @@ fn layout(raw: &Raw) -> Result<Option<Layout>, Problem> {
             return Err(Problem::Syntax { message });
         }
         layout.place = raw.at.iter().map(|p| [p[0], p[1]]).collect();
-        layout.angle = raw.at.iter().map(|p| p[2]).collect();
+        if raw.angled {
+            layout.angle = raw.at.iter().map(|p| p[2]).collect();
+        }
     }
     let Some(map) = &raw.layout else {
         return Ok((!raw.at.is_empty()).then_some(layout));

@@ -2,7 +2,7 @@
 
 use crate::network::file::raw::label_is_sound;
 use crate::network::file::{BlockShelf, Problem, nearest};
-use crate::network::source::{BlockSource, NamedBlock};
+use crate::network::source::BlockSource;
 use crate::network::{Limits, Network, NetworkBuilder};
 use crate::tensor::Label;
 use num_complex::Complex64;
@@ -142,7 +142,7 @@ pub fn einsum(
     text: &str,
     sizes: &BTreeMap<String, usize>,
     size: Option<usize>,
-    block: Option<&NamedBlock>,
+    block: Option<&BlockSource>,
     arrays: &[String],
     folder: &Path,
     limits: &Limits,
@@ -193,7 +193,7 @@ pub fn einsum(
         let source = match arrays.get(t) {
             Some(file) => BlockSource::Array(file.clone()),
             None if legs.is_empty() => BlockSource::Values(vec![Complex64::new(1.0, 0.0)]),
-            None => BlockSource::Named(crate::network::recipe::or_random(block, t)),
+            None => crate::network::recipe::or_random(block, t),
         };
         let made = shelf.block(&source, &dims, &|| format!("t{t}"))?;
         builder.source(&made, source);

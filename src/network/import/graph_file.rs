@@ -2,7 +2,7 @@
 
 use super::{edge_list, gr, graphml};
 use crate::network::file::{BlockShelf, Problem};
-use crate::network::source::{BlockSource, NamedBlock};
+use crate::network::source::BlockSource;
 use crate::network::{Limits, Network, NetworkBuilder};
 use crate::tensor::Label;
 use std::path::{Path, PathBuf};
@@ -203,7 +203,7 @@ impl GraphFile {
         reading: GraphReading,
         open: bool,
         dimension: usize,
-        block: Option<&NamedBlock>,
+        block: Option<&BlockSource>,
         limits: &Limits,
     ) -> Result<Network, Problem> {
         let mut legs: Vec<Vec<Label>>;
@@ -259,7 +259,7 @@ impl GraphFile {
             && self.names.iter().enumerate().any(|(v, n)| *n != v.to_string());
         for (t, legs) in legs.iter().enumerate() {
             let dims: Vec<usize> = legs.iter().map(|&l| builder.dim(l)).collect();
-            let source = BlockSource::Named(crate::network::recipe::or_random(block, t));
+            let source = crate::network::recipe::or_random(block, t);
             let made = shelf.block(&source, &dims, &|| format!("t{t}"))?;
             builder.source(&made, source);
             builder.tensor(named.then(|| self.names[t].as_str()), legs, &made)?;

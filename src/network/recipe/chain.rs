@@ -5,7 +5,7 @@ use super::weave::{Leg, Weave};
 use super::{Setting, or_random};
 use crate::network::Network;
 use crate::network::file::Problem;
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value, json};
 use std::f64::consts::TAU;
 
@@ -19,10 +19,10 @@ pub struct ChainRecipe {
     /// Dimension of the bonds, where it is not that of every leg.
     pub bond_dimension: Option<usize>,
     /// The block of every tensor; none for random ones.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
-const KEYS: &[&str] = &["length", "periodic", "bond_dimension", "block"];
+pub(super) const KEYS: &[&str] = &["length", "periodic", "bond_dimension", "block"];
 
 impl ChainRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {

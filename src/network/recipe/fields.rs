@@ -2,11 +2,12 @@
 
 use super::Selection;
 use crate::network::file::{Problem, check_keys};
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value};
 use std::ops::RangeInclusive;
 
-pub(super) const BLOCKS: &str = "a block's name, or a table with family and settings";
+pub(super) const BLOCKS: &str =
+    "a block's name, a table with family and settings, or a table with array";
 
 /// A table and what to call it.
 #[derive(Clone, Copy)]
@@ -100,14 +101,14 @@ impl<'a> Fields<'a> {
         number.ok_or_else(|| self.unknown(key, value, known))
     }
     /// A block.
-    pub(super) fn block(&self, key: &'static str) -> Result<Option<NamedBlock>, Problem> {
+    pub(super) fn block(&self, key: &'static str) -> Result<Option<BlockSource>, Problem> {
         self.map.get(key).map(|v| self.as_block(key, v)).transpose()
     }
-    fn as_block(&self, key: &'static str, value: &Value) -> Result<NamedBlock, Problem> {
-        NamedBlock::from_value(value).ok_or_else(|| self.unknown(key, value, BLOCKS))
+    fn as_block(&self, key: &'static str, value: &Value) -> Result<BlockSource, Problem> {
+        BlockSource::from_value(value).ok_or_else(|| self.unknown(key, value, BLOCKS))
     }
     /// A list of blocks.
-    pub(super) fn blocks(&self, key: &'static str) -> Result<Vec<NamedBlock>, Problem> {
+    pub(super) fn blocks(&self, key: &'static str) -> Result<Vec<BlockSource>, Problem> {
         match self.map.get(key) {
             None => Ok(Vec::new()),
             Some(Value::Array(list)) => list.iter().map(|v| self.as_block(key, v)).collect(),

@@ -5,7 +5,7 @@ use super::weave::{Leg, Weave};
 use super::{Setting, perfect};
 use crate::network::Network;
 use crate::network::file::Problem;
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value, json};
 
 /// Which lattice.
@@ -44,10 +44,10 @@ pub struct LatticeRecipe {
     /// Which legs stay open.
     pub open: LatticeOpen,
     /// The block of every site; none for the perfect block with as many legs as needed.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
-const KEYS: &[&str] = &["kind", "size", "periodic", "open", "block"];
+pub(super) const KEYS: &[&str] = &["kind", "size", "periodic", "open", "block"];
 const KINDS: &str = "square, cubic, hexagonal, triangular";
 const OPEN: &str = "rim, sites, none";
 

@@ -6,7 +6,7 @@ use super::weave::{Leg, Weave};
 use super::{Setting, perfect};
 use crate::network::Network;
 use crate::network::file::Problem;
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value, json};
 use std::f64::consts::TAU;
 
@@ -46,14 +46,15 @@ pub struct LayeredRecipe {
     /// Whether the last site neighbours the first.
     pub periodic: bool,
     /// The two-site tensors; none for the perfect four-leg block.
-    pub turn: Option<NamedBlock>,
+    pub turn: Option<BlockSource>,
     /// The tensors that make one site of several; none for perfect blocks.
-    pub merge: Option<NamedBlock>,
+    pub merge: Option<BlockSource>,
     /// The tensor on top; none for a perfect block.
-    pub cap: Option<NamedBlock>,
+    pub cap: Option<BlockSource>,
 }
 
-const KEYS: &[&str] = &["kind", "layers", "top", "close", "periodic", "turn", "merge", "cap"];
+pub(super) const KEYS: &[&str] =
+    &["kind", "layers", "top", "close", "periodic", "turn", "merge", "cap"];
 
 #[derive(Clone, Copy, PartialEq)]
 enum Role {

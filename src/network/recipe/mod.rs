@@ -36,7 +36,7 @@ pub use wormhole::WormholeRecipe;
 pub(in crate::network) use setting::{LegDims, Setting};
 
 use super::file::Problem;
-use super::source::NamedBlock;
+use super::source::{BlockSource, NamedBlock};
 use super::{Limits, Network, Overrides};
 use serde_json::{Map, Value};
 use std::path::Path;
@@ -76,6 +76,24 @@ pub(in crate::network) const FAMILIES: &[&str] = &[
     "regular",
     "geometric",
     "complete",
+];
+
+/// The tables of a network file and their keys: `""` is the file itself, `tensor` one of its
+/// tensors, `tiling.tile` one of a tiling's exceptions, all others the table of that name.
+pub const FILE_KEYS: &[(&str, &[&str])] = &[
+    ("", &super::file::raw::PLAIN),
+    ("tensor", &super::file::raw::TENSOR),
+    ("layout", super::file::read::LAYOUT),
+    ("tiling", tiling::KEYS),
+    ("tiling.tile", tiling::RULE_KEYS),
+    ("wormhole", wormhole::KEYS),
+    ("lattice", lattice::KEYS),
+    ("tree", tree::KEYS),
+    ("layered", layered::KEYS),
+    ("chain", chain::KEYS),
+    ("regular", random::REGULAR),
+    ("geometric", random::GEOMETRIC),
+    ("complete", random::COMPLETE),
 ];
 
 impl Recipe {
@@ -122,13 +140,26 @@ impl Recipe {
         dimension: Option<usize>,
         limits: &Limits,
     ) -> Result<Network, Problem> {
+        self.network_beside(name, dimension, Path::new(""), limits)
+    }
+    /// Like [`Self::network`], with array files looked for in `folder`.
+    ///
+    /// # Errors
+    /// [`Problem`].
+    pub fn network_beside(
+        &self,
+        name: &str,
+        dimension: Option<usize>,
+        folder: &Path,
+        limits: &Limits,
+    ) -> Result<Network, Problem> {
         let overrides = Overrides::default();
         let mut setting = Setting {
             name: name.to_owned(),
             dims: LegDims::new(dimension, Vec::new()),
             limits,
             overrides: &overrides,
-            shelf: super::file::BlockShelf::new(Path::new(""), limits),
+            shelf: super::file::BlockShelf::new(folder, limits),
         };
         self.expand(&mut setting)
     }
@@ -156,12 +187,12 @@ pub(in crate::network) fn expand(
 }
 
 /// The block asked for, or else the perfect one with as many legs as needed.
-fn perfect(block: Option<&NamedBlock>) -> NamedBlock {
-    block.cloned().unwrap_or_else(|| NamedBlock::family("perfect"))
+fn perfect(block: Option<&BlockSource>) -> BlockSource {
+    block.cloned().unwrap_or_else(|| BlockSource::family("perfect"))
 }
 
 /// The block asked for, or else random numbers, other ones for each tensor.
-pub(in crate::network) fn or_random(block: Option<&NamedBlock>, tensor: usize) -> NamedBlock {
+pub(in crate::network) fn or_random(block: Option<&BlockSource>, tensor: usize) -> BlockSource {
     let random = || NamedBlock { seed: tensor as u64, ..NamedBlock::family("random-tensor") };
-    block.cloned().unwrap_or_else(random)
+    block.cloned().unwrap_or_else(|| BlockSource::Named(random()))
 }

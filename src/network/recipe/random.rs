@@ -6,7 +6,7 @@ use super::{Setting, or_random};
 use crate::network::Network;
 use crate::network::file::Problem;
 use crate::network::graph::{self, Edges};
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value, json};
 
 /// A random regular graph, uniform in the limit of many vertices.
@@ -21,7 +21,7 @@ pub struct RegularRecipe {
     /// Whether each tensor has an open leg, too.
     pub open: bool,
     /// The block of every tensor; none for random ones.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
 /// A random geometric graph: points in the unit square, joined where they are near.
@@ -38,7 +38,7 @@ pub struct GeometricRecipe {
     /// Whether each tensor has an open leg, too.
     pub open: bool,
     /// The block of every tensor; none for random ones.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
 /// A complete graph.
@@ -49,10 +49,10 @@ pub struct CompleteRecipe {
     /// Whether each tensor has an open leg, too.
     pub open: bool,
     /// The block of every tensor; none for random ones.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
-fn common(map: &mut Map<String, Value>, vertices: u64, open: bool, block: Option<&NamedBlock>) {
+fn common(map: &mut Map<String, Value>, vertices: u64, open: bool, block: Option<&BlockSource>) {
     map.insert("vertices".into(), json!(vertices));
     if open {
         map.insert("open".into(), json!(true));
@@ -66,7 +66,7 @@ fn weave(
     vertices: u64,
     edges: &Edges,
     open: bool,
-    block: Option<&NamedBlock>,
+    block: Option<&BlockSource>,
     place: Vec<[f64; 2]>,
     setting: &mut Setting<'_>,
 ) -> Result<Network, Problem> {
@@ -91,12 +91,16 @@ fn most_legs(legs: f64, setting: &Setting<'_>) -> Result<(), Problem> {
     Ok(())
 }
 
+pub(super) const REGULAR: &[&str] = &["vertices", "degree", "seed", "open", "block"];
+pub(super) const GEOMETRIC: &[&str] =
+    &["vertices", "mean_degree", "seed", "periodic", "open", "block"];
+pub(super) const COMPLETE: &[&str] = &["vertices", "open", "block"];
+
 const ALL: std::ops::RangeInclusive<u64> = 1..=u32::MAX as u64;
 
 impl RegularRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {
-        let keys = &["vertices", "degree", "seed", "open", "block"];
-        let fields = Fields::new(map, keys, "[regular]")?;
+        let fields = Fields::new(map, REGULAR, "[regular]")?;
         Ok(Self {
             vertices: fields.needed("vertices", ALL)?,
             degree: fields.needed("degree", 1..=10_000)?,
@@ -133,8 +137,7 @@ impl RegularRecipe {
 
 impl GeometricRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {
-        let keys = &["vertices", "mean_degree", "seed", "periodic", "open", "block"];
-        let fields = Fields::new(map, keys, "[geometric]")?;
+        let fields = Fields::new(map, GEOMETRIC, "[geometric]")?;
         Ok(Self {
             vertices: fields.needed("vertices", ALL)?,
             mean_degree: fields
@@ -165,7 +168,7 @@ impl GeometricRecipe {
 
 impl CompleteRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {
-        let fields = Fields::new(map, &["vertices", "open", "block"], "[complete]")?;
+        let fields = Fields::new(map, COMPLETE, "[complete]")?;
         Ok(Self {
             vertices: fields.needed("vertices", ALL)?,
             open: fields.flag("open", false)?,

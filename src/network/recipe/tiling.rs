@@ -3,9 +3,9 @@
 use super::fields::Fields;
 use super::{Selection, Setting};
 use crate::network::file::Problem;
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use crate::network::{Layout, Network, NetworkBuilder};
-use crate::tiling::{Centre, Growth, Patch, Rule, Tiling, TilingError, grow};
+use crate::tiling::{Bounds, Centre, Growth, Patch, Rule, Tiling, TilingError, grow_within};
 use serde_json::{Map, Value, json};
 
 mod sheet;
@@ -25,13 +25,13 @@ pub struct TileRule {
     /// Which tiles.
     pub tiles: Selection,
     /// Their block.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
     /// By how many sides it is turned.
     pub turn: Option<u32>,
     /// Whether they have a bulk leg.
     pub bulk: Option<bool>,
     /// The state to which their bulk leg is fixed.
-    pub bulk_state: Option<NamedBlock>,
+    pub bulk_state: Option<BlockSource>,
 }
 
 /// A patch of a tiling.
@@ -40,9 +40,9 @@ pub struct TilingRecipe {
     /// Which patch.
     pub growth: Growth,
     /// The block of every tile; none for the perfect block with as many legs as needed.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
     /// Blocks by ring, begun again from the front when used up; goes before `block`.
-    pub blocks: Vec<NamedBlock>,
+    pub blocks: Vec<BlockSource>,
     /// By how many sides blocks are turned.
     pub turns: Turns,
     /// Which tiles have a bulk leg.
@@ -50,14 +50,14 @@ pub struct TilingRecipe {
     /// Dimension of the bulk legs, where it is their own.
     pub bulk_dimension: Option<usize>,
     /// The state to which every bulk leg is fixed; none leaves them open.
-    pub bulk_state: Option<NamedBlock>,
+    pub bulk_state: Option<BlockSource>,
     /// Tiles that are taken out; what lay beside them becomes boundary.
     pub remove: Selection,
     /// Exceptions.
     pub rules: Vec<TileRule>,
 }
 
-const KEYS: &[&str] = &[
+pub(super) const KEYS: &[&str] = &[
     "polygon",
     "then",
     "around",
@@ -73,7 +73,7 @@ const KEYS: &[&str] = &[
     "remove",
     "tile",
 ];
-const RULE_KEYS: &[&str] = &["tiles", "block", "turn", "bulk", "bulk_state"];
+pub(super) const RULE_KEYS: &[&str] = &["tiles", "block", "turn", "bulk", "bulk_state"];
 
 impl TilingRecipe {
     /// The patch, its tiles perfect blocks without bulk legs.
@@ -142,7 +142,7 @@ impl TilingRecipe {
             put("block", b.to_value());
         }
         if !self.blocks.is_empty() {
-            put("blocks", self.blocks.iter().map(NamedBlock::to_value).collect());
+            put("blocks", self.blocks.iter().map(BlockSource::to_value).collect());
         }
         if !self.turns.0.is_empty() {
             put("turn", json!(self.turns.0));
@@ -169,7 +169,8 @@ impl TilingRecipe {
     pub(super) fn patch(&self, setting: &Setting<'_>) -> Result<Patch, Problem> {
         let mut growth = self.growth.clone();
         growth.rings = setting.overrides.rings.unwrap_or(growth.rings);
-        Ok(grow(&growth, setting.limits.tensors)?)
+        let (tiles, sides) = (setting.limits.tensors, setting.limits.legs);
+        Ok(grow_within(&growth, Bounds { tiles, sides })?)
     }
 
     pub(super) fn expand(&self, setting: &mut Setting<'_>) -> Result<Network, Problem> {
@@ -181,7 +182,7 @@ impl TilingRecipe {
         Ok(builder.finish()?)
     }
 
-    fn block_of(&self, tile: u32, ring: u32) -> Option<&NamedBlock> {
+    fn block_of(&self, tile: u32, ring: u32) -> Option<&BlockSource> {
         let rule = self.rules.iter().rev().find(|r| r.block.is_some() && r.tiles.holds(tile, ring));
         match rule {
             Some(r) => r.block.as_ref(),
@@ -201,7 +202,7 @@ impl TilingRecipe {
         let rule = self.rules.iter().rev().find(|r| r.bulk.is_some() && r.tiles.holds(tile, ring));
         rule.and_then(|r| r.bulk).unwrap_or_else(|| self.bulk.holds(tile, ring))
     }
-    fn state_of(&self, tile: u32, ring: u32) -> Option<&NamedBlock> {
+    fn state_of(&self, tile: u32, ring: u32) -> Option<&BlockSource> {
         let states = |r: &&TileRule| r.bulk_state.is_some() && r.tiles.holds(tile, ring);
         let rule = self.rules.iter().rev().find(states);
         rule.and_then(|r| r.bulk_state.as_ref()).or(self.bulk_state.as_ref())

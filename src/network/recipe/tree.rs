@@ -5,7 +5,7 @@ use super::weave::{Leg, Weave};
 use super::{Setting, perfect};
 use crate::network::Network;
 use crate::network::file::Problem;
-use crate::network::source::NamedBlock;
+use crate::network::source::BlockSource;
 use serde_json::{Map, Value, json};
 use std::f64::consts::TAU;
 
@@ -30,10 +30,10 @@ pub struct TreeRecipe {
     /// The root's upward leg.
     pub root: RootLeg,
     /// The block of every tensor; none for the perfect block with as many legs as needed.
-    pub block: Option<NamedBlock>,
+    pub block: Option<BlockSource>,
 }
 
-const KEYS: &[&str] = &["arity", "depth", "root", "block"];
+pub(super) const KEYS: &[&str] = &["arity", "depth", "root", "block"];
 
 impl TreeRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {

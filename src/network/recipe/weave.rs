@@ -2,7 +2,7 @@
 
 use super::Setting;
 use crate::network::file::Problem;
-use crate::network::source::{BlockSource, NamedBlock};
+use crate::network::source::BlockSource;
 use crate::network::{Layout, Network, NetworkBuilder};
 use crate::tensor::Label;
 use std::fmt::Write;
@@ -126,7 +126,7 @@ impl Weave {
         mut self,
         setting: &mut Setting<'_>,
         planar: bool,
-        mut block: impl FnMut(usize) -> NamedBlock,
+        mut block: impl FnMut(usize) -> BlockSource,
     ) -> Result<Network, Problem> {
         let (most, legs) = (setting.limits.tensors, setting.limits.legs);
         for (what, count, limit) in
@@ -188,7 +188,7 @@ impl Weave {
             let legs = &label_of[self.range(v)];
             dims.clear();
             dims.extend(legs.iter().map(|&l| builder.dim(l)));
-            let source = BlockSource::Named(block(v));
+            let source = block(v);
             let made = setting.shelf.block(&source, &dims, &|| format!("t{v}"))?;
             builder.source(&made, source);
             builder.tensor(None, legs, &made)?;

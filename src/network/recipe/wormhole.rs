@@ -20,7 +20,7 @@ pub struct WormholeRecipe {
     pub twist: u64,
 }
 
-const KEYS: &[&str] = &["one", "other", "twist"];
+pub(super) const KEYS: &[&str] = &["one", "other", "twist"];
 
 impl WormholeRecipe {
     pub(super) fn read(map: &Map<String, Value>) -> Result<Self, Problem> {

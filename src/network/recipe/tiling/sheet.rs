@@ -4,7 +4,7 @@ use super::{TilingRecipe, begin_layout};
 use crate::block::Block;
 use crate::network::file::Problem;
 use crate::network::recipe::Setting;
-use crate::network::source::{BlockSource, NamedBlock};
+use crate::network::source::BlockSource;
 use crate::network::{Layout, NetworkBuilder};
 use crate::tensor::Label;
 use crate::tiling::{Patch, Tiling, geometry};
@@ -12,6 +12,9 @@ use std::fmt::Write;
 use std::sync::Arc;
 
 const NONE: u32 = u32::MAX;
+
+/// Most tiles of several kinds whose places are noted.
+const MOST_PLACED: usize = 200_000;
 
 /// A patch with the tiles that are taken out of it.
 pub(in crate::network::recipe) struct Sheet<'a> {
@@ -168,12 +171,34 @@ pub(in crate::network::recipe) fn lay(
             layout.sheet.resize(layout.ring.len(), s as u32);
         }
     }
+    let on_tile: Vec<usize> = tensors.states.iter().map(|s| s.tile).collect();
     tensors.lay_states(builder, setting)?;
     if let Some((p, q)) = layout.tiling {
         // Without holes and seams, places follow from the bonds whenever they are wanted.
         if sheets.iter().any(|s| !s.removed.is_empty()) {
             let tiling = Tiling::new(u64::from(p), u64::from(q))?;
             place(&mut layout, sheets, tiling);
+        }
+    } else if let [sheet] = sheets
+        && sheet.patch.tiles() <= MOST_PLACED
+    {
+        let growth = &sheet.recipe.growth;
+        let polygons = match growth.polygons.last() {
+            Some(&last) if growth.keep_last => vec![last],
+            _ => growth.polygons.clone(),
+        };
+        if let Some(frames) = geometry::mixed_frames(&sheet.patch, &polygons) {
+            let stays = (0..frames.len()).filter(|&t| sheet.stays(t as u32));
+            layout.place = stays.map(|t| frames[t].place()).collect();
+        }
+    }
+    // States that fix bulk legs lie on their tiles.
+    if !layout.place.is_empty() {
+        for &tile in &on_tile {
+            layout.place.push(layout.place[tile]);
+            if !layout.angle.is_empty() {
+                layout.angle.push(layout.angle[tile]);
+            }
         }
     }
     Ok(layout)
@@ -209,12 +234,18 @@ fn name(
 }
 
 /// A block already made: its name (none for the default), its dimensions.
-type Made = (Option<NamedBlock>, Vec<usize>, Arc<Block>);
+type Made = (Option<BlockSource>, Vec<usize>, Arc<Block>);
+
+/// A bulk leg to be fixed, its state, and its tile's tensor.
+struct State {
+    leg: Label,
+    block: BlockSource,
+    tile: usize,
+}
 
 struct Tiles {
     made: Vec<Made>,
-    /// Bulk legs to be fixed, with their states.
-    states: Vec<(Label, NamedBlock)>,
+    states: Vec<State>,
     text: String,
 }
 
@@ -247,7 +278,11 @@ impl Tiles {
                 legs.push(label);
                 match recipe.state_of(tile, ring) {
                     None => builder.bulk([label]),
-                    Some(state) => self.states.push((label, state.clone())),
+                    Some(state) => self.states.push(State {
+                        leg: label,
+                        block: state.clone(),
+                        tile: number as usize,
+                    }),
                 }
             }
             dims.clear();
@@ -263,25 +298,35 @@ impl Tiles {
         builder: &mut NetworkBuilder,
         setting: &mut Setting<'_>,
     ) -> Result<(), Problem> {
-        for (label, state) in std::mem::take(&mut self.states) {
-            let dims = [builder.dim(label)];
-            let block = self.block(builder, Some(&state), &dims, setting)?;
-            builder.tensor(None, &[label], &block)?;
+        for State { leg, mut block, tile } in std::mem::take(&mut self.states) {
+            let dims = [builder.dim(leg)];
+            if let BlockSource::Named(named) = &mut block
+                && named.family == "random-state"
+            {
+                // Each tile its own: the numbers are drawn from seed plus tensor number.
+                named.seed = named.seed.wrapping_add(tile as u64);
+                let tensor = || format!("t{tile}");
+                let made = setting.shelf.block(&block, &dims, &tensor)?;
+                builder.source(&made, block);
+                builder.tensor(None, &[leg], &made)?;
+                continue;
+            }
+            let block = self.block(builder, Some(&block), &dims, setting)?;
+            builder.tensor(None, &[leg], &block)?;
         }
         Ok(())
     }
     fn block(
         &mut self,
         builder: &mut NetworkBuilder,
-        named: Option<&NamedBlock>,
+        named: Option<&BlockSource>,
         dims: &[usize],
         setting: &mut Setting<'_>,
     ) -> Result<Arc<Block>, Problem> {
         if let Some(k) = self.made.iter().position(|(n, d, _)| n.as_ref() == named && d == dims) {
             return Ok(Arc::clone(&self.made[k].2));
         }
-        let spec = named.cloned().unwrap_or_else(|| NamedBlock::family("perfect"));
-        let source = BlockSource::Named(spec);
+        let source = named.cloned().unwrap_or_else(|| BlockSource::family("perfect"));
         let tensor = format!("t{}", builder.tensors());
         let block = setting.shelf.block(&source, dims, &|| tensor.clone())?;
         builder.source(&block, source);
