@@ -1,5 +1,8 @@
 //! `lierne order`.
 
+mod compare;
+mod page;
+
 use super::common::parse_bytes;
 use super::{Common, Failure, Verdict};
 use crate::network::{self, Limits, Network};
@@ -9,10 +12,13 @@ use std::path::PathBuf;
 
 /// Arguments of `lierne order`.
 #[derive(Debug, clap::Args)]
+#[command(args_conflicts_with_subcommands = true, subcommand_negates_reqs = true)]
 pub struct Args {
+    #[command(subcommand)]
+    command: Option<Sub>,
     /// The network (.toml or .json)
-    #[arg(value_name = "NET")]
-    network: PathBuf,
+    #[arg(value_name = "NET", required_unless_present = "calibrate")]
+    network: Option<PathBuf>,
     /// Time to spend; the work is set so that an ordinary core does it in this time, so the
     /// same seed gives the same plan unless the time runs out first
     #[arg(long, value_name = "S")]
@@ -30,6 +36,9 @@ pub struct Args {
     /// Slice the plan so that it runs in this memory (16 bytes an element), for example 4GiB
     #[arg(long, value_name = "SIZE", value_parser = parse_bytes)]
     memory: Option<u64>,
+    /// Slice the plan into at least so many slices
+    #[arg(long, default_value_t = 1, value_name = "N")]
+    slices: u64,
     /// Seed of every random choice
     #[arg(long, default_value_t = 0, value_name = "N")]
     seed: u64,
@@ -39,15 +48,46 @@ pub struct Args {
     /// Write the plan
     #[arg(long, value_name = "FILE")]
     save: Option<PathBuf>,
+    /// Measure this machine's arithmetic against its memory and say the objective that models
+    /// it
+    #[arg(long)]
+    calibrate: bool,
+}
+
+#[derive(Debug, clap::Subcommand)]
+enum Sub {
+    /// Run methods on networks with several seeds and budgets: a table and a page of charts
+    Compare(compare::Args),
 }
 
 /// Labels touched in a second by one core of an ordinary machine.
-const RATE: f64 = 4e7;
+const RATE: f64 = 8e7;
 
 /// Runs the command.
 pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
+    if let Some(Sub::Compare(a)) = &args.command {
+        return compare::run(a, common);
+    }
+    if args.calibrate {
+        let c = order::calibrate(common);
+        if common.json {
+            common.say_json(&json!({
+                "multiply_adds_a_second": c.multiply_adds,
+                "elements_a_second": c.elements,
+                "weight": c.weight(),
+            }))?;
+        } else {
+            common.say(format!(
+                "{:.3e} multiply-adds and {:.3e} elements a second: --objective mix:{:.1}",
+                c.multiply_adds,
+                c.elements,
+                c.weight()
+            ));
+        }
+    }
+    let Some(path) = &args.network else { return Ok(Verdict::Yes) };
     let mut request = request(args)?;
-    let network = network::load(&args.network, &Limits::default())?;
+    let network = network::load(path, &Limits::default())?;
     let shape = Shape::of(&network);
     let mut given = None;
     if let Some(path) = &args.plan {
@@ -77,6 +117,7 @@ fn request(args: &Args) -> Result<Request, Failure> {
         objective: objective(&args.objective)?,
         method: Method::parse(&args.method)?,
         memory: args.memory.map(|bytes| (bytes / 16).max(1)),
+        slices: u128::from(args.slices.max(1)),
         ..Request::default()
     };
     if let Some(seconds) = args.seconds {

@@ -10,6 +10,7 @@
 use super::graph::{Graph, LineGraph, members};
 use super::greedy::log2_sum;
 use super::net::{Net, Steps};
+use super::tree::Tree;
 use crate::watch::Watch;
 use rand::Rng;
 use rand_chacha::ChaCha8Rng;
@@ -43,6 +44,7 @@ pub(crate) fn greedy(line: &LineGraph, choice: Choice, rng: &mut ChaCha8Rng) -> 
     let mut shake: Vec<u32> = (0..n).map(|_| rng.random()).collect();
     let mut left: Vec<usize> = (0..n).filter(|&v| !line.open[v]).collect();
     let mut order = Vec::with_capacity(left.len());
+    let mut row = Vec::new();
     while !left.is_empty() {
         let (at, &v) = left
             .iter()
@@ -55,7 +57,7 @@ pub(crate) fn greedy(line: &LineGraph, choice: Choice, rng: &mut ChaCha8Rng) -> 
         order.push(v as u32);
         let near = g.neighbours(v);
         let new_pairs = g.fill_of(v) > 0;
-        g.eliminate(v);
+        g.eliminate(v, &mut row);
         // Figures change for the neighbours and, where pairs were joined, for theirs.
         let mut touched = vec![0u64; g.words];
         for &u in &near {
@@ -79,113 +81,198 @@ impl Graph {
     }
 }
 
-/// An order under search, with the price of its cliques.
+/// Most bytes for the graphs kept along an order.
+const KEPT: usize = 32 << 20;
+
+/// An order under search. What is left of the graph depends on which labels are gone, not on
+/// their order: a move changes nothing outside the stretch between its two places. Graphs
+/// kept at every `stride`-th place make the stretch cheap to look at.
 struct Search<'a> {
     line: &'a LineGraph,
+    /// The common size of all labels, where they have one.
     uniform: Option<f64>,
-    scratch: Graph,
+    order: Vec<u32>,
+    /// Bits of the clique at each place.
     widths: Vec<f64>,
+    /// Σ 4^(bits − scale).
+    sum: f64,
+    scale: f64,
+    stride: usize,
+    kept: Vec<Graph>,
+    scratch: Graph,
+    row: Vec<u64>,
+    work: u64,
 }
 
-impl Search<'_> {
-    /// Bits of every label's clique in this order, itself included; returns the widest and
-    /// log2 Σ 4^bits.
-    fn weigh(&mut self, order: &[u32]) -> (f64, f64) {
-        self.scratch.clone_from(&self.line.graph);
-        let g = &mut self.scratch;
-        let (mut widest, mut sum) = (0.0f64, 0.0f64);
-        let mut scale = 0.0f64;
-        for &v in order {
-            let v = v as usize;
-            let own = self.line.bits[v];
-            let bits = match self.uniform {
-                Some(b) => b * (g.degree(v) + 1) as f64,
-                None => g.row_bits(v, &self.line.bits) + own,
-            };
-            self.widths[v] = bits;
-            widest = widest.max(bits);
-            let x = 2.0 * bits;
-            if x > scale + 900.0 {
-                sum *= (scale - x).exp2();
-                scale = x;
-            }
-            sum += (x - scale).exp2();
-            g.eliminate(v);
+impl<'a> Search<'a> {
+    fn new(line: &'a LineGraph, order: Vec<u32>) -> Self {
+        let n = order.len();
+        let first = line.bits.first().copied().unwrap_or(1.0);
+        let one = line.graph.n * line.graph.words * 8;
+        let stride = (n * one / KEPT + 1).max(12);
+        let mut s = Self {
+            line,
+            uniform: line.bits.iter().all(|&b| b == first).then_some(first),
+            widths: vec![0.0; n],
+            order,
+            sum: 0.0,
+            scale: 0.0,
+            stride,
+            kept: vec![line.graph.clone(); n.div_ceil(stride)],
+            scratch: line.graph.clone(),
+            row: Vec::new(),
+            work: 0,
+        };
+        s.settle(0, n);
+        s.scale = s.widest();
+        s.sum = s.widths.iter().map(|&w| s.weight(w)).sum();
+        s
+    }
+    fn weight(&self, bits: f64) -> f64 {
+        (2.0 * (bits - self.scale)).clamp(-1000.0, 900.0).exp2()
+    }
+    fn widest(&self) -> f64 {
+        self.widths.iter().copied().fold(0.0, f64::max)
+    }
+    /// Takes a label out of the scratch graph; the bits of its clique.
+    fn take(&mut self, v: usize) -> f64 {
+        let bits = match self.uniform {
+            Some(_) => 0.0,
+            None => self.scratch.row_bits(v, &self.line.bits) + self.line.bits[v],
+        };
+        let degree = self.scratch.eliminate(v, &mut self.row);
+        self.work += 4 + (degree * (self.scratch.words + 6) / 8) as u64;
+        self.uniform.map_or(bits, |b| b * (degree + 1) as f64)
+    }
+    /// Sets the scratch graph to what is left before a place.
+    fn go_to(&mut self, place: usize) {
+        let at = place / self.stride;
+        self.scratch.clone_from(&self.kept[at]);
+        self.work += (self.scratch.n * self.scratch.words / 32) as u64;
+        for i in at * self.stride..place {
+            let v = self.order[i] as usize;
+            self.take(v);
         }
-        (widest, scale + sum.log2())
+    }
+    /// Brings widths and kept graphs of a stretch of places up to date.
+    fn settle(&mut self, from: usize, to: usize) {
+        self.go_to(from);
+        for i in from..to {
+            if i % self.stride == 0 && i > 0 {
+                self.kept[i / self.stride].clone_from(&self.scratch);
+            }
+            let v = self.order[i] as usize;
+            self.widths[i] = self.take(v);
+        }
+        if to < self.order.len() && to.is_multiple_of(self.stride) {
+            self.kept[to / self.stride].clone_from(&self.scratch);
+        }
+    }
+    /// Moves the label at one place to another.
+    fn rotate(&mut self, from: usize, to: usize) {
+        if from < to {
+            self.order[from..=to].rotate_left(1);
+        } else {
+            self.order[to..=from].rotate_right(1);
+        }
+    }
+    /// Tries a move; makes it and returns true where the growth is accepted.
+    fn attempt(&mut self, from: usize, to: usize, accept: impl FnOnce(f64) -> bool) -> bool {
+        let (lo, hi) = (from.min(to), from.max(to));
+        self.go_to(lo);
+        self.rotate(from, to);
+        let before: f64 = self.widths[lo..=hi].iter().map(|&w| self.weight(w)).sum();
+        let mut after = 0.0;
+        for i in lo..=hi {
+            let v = self.order[i] as usize;
+            let bits = self.take(v);
+            after += self.weight(bits);
+        }
+        let sum = (self.sum - before + after).max(f64::MIN_POSITIVE);
+        if accept((sum / self.sum).log2()) {
+            self.settle(lo, hi + 1);
+            // Afresh, so that no rounding builds up.
+            self.sum = self.widths.iter().map(|&w| self.weight(w)).sum();
+            true
+        } else {
+            self.rotate(to, from);
+            false
+        }
     }
 }
 
-/// Improves an order by moving labels; `work` counts labels eliminated. Ends early where the
-/// widest clique is down to `goal` bits. Returns the best order and the bits of its widest clique.
+/// Improves an order by moving labels; `work` counts neighbours met. Ends early where the
+/// widest clique is down to `goal` bits. Returns the best order.
 pub(crate) fn improve(
     line: &LineGraph,
     order: Vec<u32>,
+    hot: f64,
     goal: f64,
     work: u64,
     rng: &mut ChaCha8Rng,
     watch: &dyn Watch,
-) -> (Vec<u32>, f64) {
+) -> Vec<u32> {
     let n = order.len();
-    let first = line.bits.first().copied().unwrap_or(1.0);
-    let mut s = Search {
-        line,
-        uniform: line.bits.iter().all(|&b| b == first).then_some(first),
-        scratch: line.graph.clone(),
-        widths: vec![0.0; line.graph.n],
-    };
-    let mut now = order;
-    let (mut widest, mut price) = s.weigh(&now);
-    let mut best = (now.clone(), widest, price);
     if n < 3 {
-        return (best.0, best.1);
+        return order;
     }
-    let mut spent = 0u64;
+    let step = line.bits.iter().copied().fold(0.0, f64::max);
+    let mut s = Search::new(line, order);
+    let mut widest = s.widest();
+    let mut best = (widest, s.sum, s.order.clone());
     let mut tries = 0u32;
-    while spent < work && best.1 > goal + 1e-9 {
-        // Three heats: the first hot, later ones from the best order on.
-        let done = (spent as f64 / work as f64 * 3.0).fract();
-        let temperature = 2.0 * 0.02f64.powf(done);
-        let from = if rng.random::<f64>() < 0.6 {
+    while s.work < work && best.0 > goal + 1e-9 {
+        let temperature = hot * 0.02f64.powf(s.work as f64 / work as f64);
+        let start = rng.random_range(0..n);
+        let from = if rng.random::<f64>() < 0.5 {
             // A label whose clique is nearly as wide as the widest.
-            let start = rng.random_range(0..n);
             (0..n)
                 .map(|i| (start + i) % n)
-                .find(|&i| s.widths[now[i] as usize] >= widest - first)
+                .find(|&i| s.widths[i] >= widest - step - 1e-9)
                 .unwrap_or(start)
         } else {
-            rng.random_range(0..n)
+            start
         };
-        let reach = if rng.random::<f64>() < 0.5 { 12.min(n - 1) } else { n - 1 };
+        let reach = if rng.random::<f64>() < 0.8 { 10.min(n - 1) } else { n - 1 };
         let by = 1 + rng.random_range(0..reach);
         let to =
             if rng.random::<bool>() { (from + by).min(n - 1) } else { from.saturating_sub(by) };
+        let chance: f64 = rng.random();
         if from == to {
-            spent += 1;
+            s.work += 1;
             continue;
         }
-        let mut next = now.clone();
-        let v = next.remove(from);
-        next.insert(to, v);
-        let kept = s.widths.clone();
-        let (w, p) = s.weigh(&next);
-        spent += n as u64;
-        let growth = p - price;
-        if growth <= 0.0 || rng.random::<f64>() < (-growth / temperature).exp2() {
-            now = next;
-            (widest, price) = (w, p);
-            if (w, p) < (best.1, best.2) {
-                best = (now.clone(), w, p);
+        if s.attempt(from, to, |growth| growth <= 0.0 || chance < (-growth / temperature).exp2()) {
+            widest = s.widest();
+            if (widest, s.sum) < (best.0, best.1) {
+                best = (widest, s.sum, s.order.clone());
             }
-        } else {
-            s.widths = kept;
         }
         tries += 1;
         if tries.is_multiple_of(256) && watch.stop() {
             break;
         }
     }
-    (best.0, best.1)
+    best.2
+}
+
+/// The order in which a tree sums the closed labels, as vertices of the line graph.
+pub(crate) fn order_of(net: &Net, tree: &Tree, line: &LineGraph) -> Vec<u32> {
+    let mut vertex = vec![0u32; net.bits.len()];
+    for (v, &l) in line.labels.iter().enumerate() {
+        vertex[l as usize] = v as u32;
+    }
+    let mut order = Vec::with_capacity(line.labels.len());
+    let mut union = Vec::new();
+    for v in tree.bottom_up() {
+        let [a, b] = tree.children[v as usize];
+        super::cost::merge(&tree.sets[a as usize], &tree.sets[b as usize], &mut union);
+        let kept = &tree.sets[v as usize];
+        order.extend(
+            union.iter().filter(|l| kept.binary_search(l).is_err()).map(|&l| vertex[l as usize]),
+        );
+    }
+    order
 }
 
 /// The steps that sum the labels in this order: the tensors that hold a label are joined, the

@@ -33,17 +33,27 @@ impl Graph {
     pub fn neighbours(&self, v: usize) -> Vec<usize> {
         members(self.row(v))
     }
-    /// Joins all neighbours of v with one another and takes v away.
-    pub fn eliminate(&mut self, v: usize) {
+    /// Joins all neighbours of v with one another and takes v away; returns how many there
+    /// were. `row` is scratch space.
+    pub fn eliminate(&mut self, v: usize, row: &mut Vec<u64>) -> usize {
         let w = self.words;
-        let row = self.row(v).to_vec();
-        for u in members(&row) {
-            let r = &mut self.rows[u * w..(u + 1) * w];
-            r.iter_mut().zip(&row).for_each(|(a, b)| *a |= b);
-            r[u / 64] &= !(1 << (u % 64));
-            r[v / 64] &= !(1 << (v % 64));
+        row.clear();
+        row.extend_from_slice(self.row(v));
+        let mut degree = 0;
+        for (i, &word) in row.iter().enumerate() {
+            let mut rest = word;
+            degree += word.count_ones() as usize;
+            while rest != 0 {
+                let u = i * 64 + rest.trailing_zeros() as usize;
+                rest &= rest - 1;
+                let r = &mut self.rows[u * w..(u + 1) * w];
+                r.iter_mut().zip(row.iter()).for_each(|(a, b)| *a |= b);
+                r[i] &= !(1 << (u % 64));
+                r[v / 64] &= !(1 << (v % 64));
+            }
         }
         self.rows[v * w..(v + 1) * w].fill(0);
+        degree
     }
     /// Takes v's edges away.
     pub fn isolate(&mut self, v: usize) {

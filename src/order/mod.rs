@@ -2,6 +2,7 @@
 
 mod anneal;
 mod bisection;
+mod calibrate;
 mod cost;
 mod elimination;
 mod error;
@@ -10,8 +11,10 @@ mod file;
 mod graph;
 mod greedy;
 mod hypergraph;
+mod kernel;
 mod lower;
 mod magnitude;
+mod narrow;
 mod net;
 mod parts;
 mod plan;
@@ -25,6 +28,7 @@ mod subsets;
 mod tree;
 mod windows;
 
+pub use calibrate::{Calibration, calibrate};
 pub use cost::{Cost, cost};
 pub use error::OrderError;
 pub use file::{load, save};

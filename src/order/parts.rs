@@ -1,12 +1,14 @@
-//! Exact reductions: what can be said about the best order before looking for it.
+//! Reductions: what can be said about the best order before looking for it.
 //!
+//! * *Parallel bonds.* Labels held by the same tensors are one label of the product size:
+//!   exact.
 //! * *Components.* Parts that share no label are ordered apart and joined last, the smallest
-//!   results first. Parts that are copies of one another are ordered once.
-//! * *Parallel bonds.* Labels held by the same tensors are one label of the product size.
+//!   results first. Parts that are copies of one another are ordered once. Joining results
+//!   takes at most a pass over each more than the best order, so networks small enough for
+//!   the exhaustive method are kept whole.
 //!
-//! Neither changes the price of the best order. (Absorbing a tensor into a neighbour that
-//! holds all its labels leaves the widest step of the best order as it is but not its
-//! multiply-adds; the elimination method, which looks for narrow steps, uses it.)
+//! (Absorbing a tensor into a neighbour that holds all its labels leaves the widest step of
+//! the best order as it is but not its multiply-adds; the search for narrow orders uses it.)
 
 use super::net::{Net, Steps};
 use std::collections::{BTreeMap, BinaryHeap, HashMap};
@@ -19,6 +21,13 @@ pub(crate) struct Part {
     pub tensors: Vec<u32>,
     /// The number of the first part that is a copy of this one; its own where there is none.
     pub like: usize,
+}
+
+/// The net as one part, parallel labels fused.
+pub(crate) fn whole(net: &Net) -> Part {
+    let tensors: Vec<u32> = (0..net.tensors.len() as u32).collect();
+    let part = cut_out(net, &net.holders(), &tensors, &tensors);
+    Part { net: part, tensors, like: 0 }
 }
 
 /// The connected parts of a net, parallel labels fused.

@@ -10,7 +10,9 @@ use super::elimination::{self, Choice};
 use super::exhaustive;
 use super::graph::LineGraph;
 use super::greedy::{self, Rule};
+use super::kernel::Kernel;
 use super::lower;
+use super::narrow;
 use super::net::{Net, Steps};
 use super::price::Price;
 use super::subsets::Aim;
@@ -25,17 +27,20 @@ use rayon::prelude::*;
 use std::sync::{Mutex, PoisonError};
 
 /// Tasks of a round; fixed, so that the threads do not matter.
-const TASKS: usize = 8;
+pub(super) const TASKS: usize = 8;
 /// Rounds after the first.
 const ROUNDS: u64 = 6;
 /// Rounds without a better plan after which the search ends, once no narrower step is possible.
 const PATIENCE: u32 = 3;
 /// Line graphs with more labels than this are left to the methods that do not build them.
 pub(crate) const LINE: usize = 4000;
+/// On parts of so many tensors a balanced search looks at multiply-adds alone.
+const SMALL: usize = 64;
 /// Trees kept from round to round.
 const POOL: usize = 6;
 
 /// What is sought for a part.
+#[derive(Clone, Copy)]
 pub(crate) struct Task<'a> {
     pub net: &'a Net,
     pub objective: Objective,
@@ -73,11 +78,14 @@ fn score(tree: &Tree, objective: Objective) -> f64 {
     }
 }
 
-struct Run<'a> {
-    task: &'a Task<'a>,
+pub(super) struct Run<'a> {
+    pub task: &'a Task<'a>,
     price: Price,
-    line: Option<LineGraph>,
+    /// The net reduced for narrow orders, with its line graph.
+    pub kernel: Option<(Kernel, LineGraph)>,
     bound: usize,
+    /// Bits of the smallest label.
+    least: f64,
     best: Mutex<f64>,
 }
 
@@ -86,6 +94,9 @@ struct Run<'a> {
 pub(crate) fn solve(task: &Task) -> Option<Solved> {
     let net = task.net;
     let n = net.tensors.len();
+    if task.objective == Objective::Balanced && n <= SMALL {
+        return solve(&Task { objective: Objective::MultiplyAdds, ..*task });
+    }
     if n <= 2 {
         let steps = if n == 2 { vec![(0, 1)] } else { Vec::new() };
         return Some(Solved { steps, method: "only order", optimal: true });
@@ -93,8 +104,14 @@ pub(crate) fn solve(task: &Task) -> Option<Solved> {
     let mut run = Run {
         task,
         price: Price::of(task.objective),
-        line: None,
+        kernel: None,
         bound: 0,
+        least: net
+            .tensors
+            .iter()
+            .flatten()
+            .map(|&l| net.bits[l as usize])
+            .fold(f64::INFINITY, f64::min),
         best: Mutex::new(f64::INFINITY),
     };
     let wants = |m: Method| task.method == m || task.method == Method::Portfolio;
@@ -107,13 +124,18 @@ pub(crate) fn solve(task: &Task) -> Option<Solved> {
         }
     }
     if wants(Method::Elimination) {
-        run.line = LineGraph::of(net, LINE);
-        run.bound = run.line.as_ref().map_or(0, |l| lower::best_treewidth(&l.graph, 3));
+        if let Some(line) = LineGraph::of(net, LINE) {
+            run.bound = lower::best_treewidth(&line.graph, 5);
+            let kernel = Kernel::of(net, &line, run.bound);
+            run.kernel = LineGraph::of(&kernel.net, LINE).map(|line| (kernel, line));
+        }
     }
     if task.method != Method::Portfolio {
-        let best = (0..TASKS)
+        // Where the work is too little for eight attempts, fewer are made.
+        let tasks = (task.work / (60 * run.legs())).clamp(1, TASKS as u64);
+        let best = (0..tasks as usize)
             .into_par_iter()
-            .map(|i| run.alone(i, task.work / TASKS as u64))
+            .map(|i| run.alone(i, task.work / tasks))
             .collect::<Vec<_>>()
             .into_iter()
             .min_by(|a, b| a.score.total_cmp(&b.score))?;
@@ -137,7 +159,11 @@ impl Run<'_> {
         }
         Candidate { tree, score, method }
     }
-    fn rng(&self, round: u64, task: usize) -> ChaCha8Rng {
+    /// Bits of the narrowest step that the lower bound leaves possible.
+    pub fn goal(&self) -> f64 {
+        self.least * (self.bound + 1) as f64
+    }
+    pub fn rng(&self, round: u64, task: usize) -> ChaCha8Rng {
         let mut rng = ChaCha8Rng::seed_from_u64(self.task.seed);
         rng.set_stream(round * TASKS as u64 + task as u64 + 1);
         rng
@@ -172,7 +198,7 @@ impl Run<'_> {
     fn alone(&self, i: usize, work: u64) -> Candidate {
         let mut rng = self.rng(0, i);
         match self.task.method {
-            Method::Elimination if self.line.is_some() => {
+            Method::Elimination if self.kernel.is_some() => {
                 self.candidate(self.by_elimination(i, work, &mut rng), "elimination")
             }
             Method::Bisection => self.candidate(self.by_bisection(work, &mut rng), "bisection"),
@@ -209,14 +235,22 @@ impl Run<'_> {
         if let Some(steps) = task.start {
             pool.push(self.candidate(Tree::new(net, steps), "given plan"));
         }
-        let share = task.work / TASKS as u64;
-        let made: Vec<Candidate> =
-            (0..TASKS).into_par_iter().map(|i| self.from_scratch(i, share * 2 / 5)).collect();
+        let mut share = task.work / TASKS as u64;
+        if task.objective == Objective::Balanced {
+            if let Some(tree) = narrow::order(self, share / 2) {
+                pool.push(self.candidate(tree, "elimination and annealing"));
+                share -= share / 2;
+            }
+        }
+        let made: Vec<Candidate> = (0..TASKS)
+            .into_par_iter()
+            .map(|i| self.from_scratch(&pool, i, share * 2 / 5))
+            .collect();
         pool.extend(made);
         sift(&mut pool);
         let mut idle = 0;
         for round in 1..=ROUNDS {
-            let done = pool.iter().any(|c| c.tree.widest() <= (self.bound + 1) as f64 + 1e-9);
+            let done = pool.iter().any(|c| c.tree.widest() <= self.goal() + 1e-9);
             if task.watch.stop() || (idle >= PATIENCE && done) {
                 break;
             }
@@ -233,21 +267,23 @@ impl Run<'_> {
     }
 
     /// A task of the first round.
-    fn from_scratch(&self, i: usize, work: u64) -> Candidate {
+    fn from_scratch(&self, pool: &[Candidate], i: usize, work: u64) -> Candidate {
         let mut rng = self.rng(0, i);
         let half = work / 2;
         let (mut tree, method) = match i {
-            0 | 1 if self.line.is_some() => (self.by_elimination(i, half, &mut rng), "elimination"),
-            2 | 3 => (self.by_bisection(half, &mut rng), "bisection"),
-            5.. => {
-                let narrow = self.task.objective == Objective::Balanced && i % 2 == 0;
-                let price = if narrow { Price::NARROW } else { self.price };
-                (self.by_annealing(price, half, &mut rng), "annealing")
+            // The narrowest order so far, whose multiply-adds have yet to be looked at.
+            0 | 4 if pool.len() > 1 => {
+                (pool[1 + i % (pool.len() - 1)].tree.clone(), pool[1].method)
             }
+            0 | 1 if self.kernel.is_some() => {
+                (self.by_elimination(i, half, &mut rng), "elimination")
+            }
+            2 | 3 => (self.by_bisection(half, &mut rng), "bisection"),
+            5.. => (self.by_annealing(self.price, half, &mut rng), "annealing"),
             _ => (self.by_restarts(i, half, &mut rng), "greedy"),
         };
         let price = match self.task.objective {
-            Objective::Balanced if i < 2 => self.price.within(tree.widest()),
+            Objective::Balanced if i < 2 || i == 4 => self.price.within(tree.widest()),
             _ => self.price,
         };
         self.polish(&mut tree, price, half, &mut rng);
@@ -263,7 +299,7 @@ impl Run<'_> {
         if self.task.objective == Objective::Balanced {
             let narrowest = pool.iter().map(|c| c.tree.widest()).fold(f64::INFINITY, f64::min);
             price = match i % 4 {
-                0 if narrowest > (self.bound + 1) as f64 => Price::NARROW,
+                0 if narrowest > self.goal() + 1e-9 => Price::NARROW,
                 1 => price,
                 _ => price.within(narrowest),
             };
@@ -346,12 +382,12 @@ impl Run<'_> {
 
     fn by_elimination(&self, i: usize, work: u64, rng: &mut ChaCha8Rng) -> Tree {
         let net = self.task.net;
-        let Some(line) = &self.line else { return self.greedy_tree(i, rng) };
+        let Some((kernel, line)) = &self.kernel else { return self.greedy_tree(i, rng) };
         let choice = [Choice::Fill, Choice::FillAndDegree, Choice::Degree][i % 3];
         let order = elimination::greedy(line, choice, rng);
-        let goal = (self.bound + 1) as f64;
-        let (order, _) = elimination::improve(line, order, goal, work, rng, self.task.watch);
-        Tree::new(net, &elimination::steps(net, line, &order))
+        let order = elimination::improve(line, order, 2.0, self.goal(), work, rng, self.task.watch);
+        let steps = elimination::steps(&kernel.net, line, &order);
+        Tree::new(net, &kernel.grown_back(net, &steps))
     }
 
     fn by_annealing(&self, price: Price, work: u64, rng: &mut ChaCha8Rng) -> Tree {

@@ -4,7 +4,7 @@ use super::graph::LineGraph;
 use super::net::{Net, Steps};
 use super::portfolio::{self, Solved, Task};
 use super::price::Price;
-use super::{Cost, OrderError, Plan, Shape, cost, lower, parts, slicing};
+use super::{Cost, OrderError, Plan, Shape, cost, exhaustive, lower, parts, slicing};
 use crate::watch::{News, Watch};
 
 /// What is to be small.
@@ -15,7 +15,7 @@ pub enum Objective {
     MultiplyAdds,
     /// Multiply-adds, but a plan whose widest step is narrower may cost a little more: each
     /// halving of the widest step is worth a factor of two, since narrow steps mean small
-    /// tensors. Where the order of fewest multiply-adds is proven, it is taken.
+    /// tensors. On parts of up to 64 tensors multiply-adds alone count.
     #[default]
     Balanced,
     /// The largest tensor; among equals the multiply-adds.
@@ -99,6 +99,8 @@ pub struct Request {
     pub start: Option<Plan>,
     /// Most elements that may be alive at once; a plan that takes more is sliced.
     pub memory: Option<u64>,
+    /// Fewest slices; 1 for a plan that need not be sliced.
+    pub slices: u128,
     /// Work to spend, in labels touched. The same work and seed give the same plan whatever
     /// the number of threads.
     pub work: u64,
@@ -116,6 +118,7 @@ impl Default for Request {
             exhaustive: 20,
             start: None,
             memory: None,
+            slices: 1,
             work: 200_000_000,
             seconds: f64::INFINITY,
         }
@@ -182,23 +185,23 @@ pub fn search(shape: &Shape, request: &Request, watch: &dyn Watch) -> Result<Fou
     let net = Net::of(shape, &sliced);
     watch.tell(News::Stage("looking for an order"));
     // Where slices follow, their refinement has its part of the work.
-    let (work, rest) = match request.memory {
-        Some(_) => (request.work / 3 * 2, request.work / 3),
-        None => (request.work, 0),
-    };
+    let slices = request.memory.is_some() || request.slices > 1;
+    let rest = if slices { request.work / 2 } else { 0 };
+    let work = request.work - rest;
     let (steps, solved) = order_net(&net, request, work, &until)?;
     let mut plan = Plan { steps, sliced };
     plan.steps = slicing::scheduled(shape, &plan);
     let mut price = cost(shape, &plan)?;
     let unsliced = price.log10_multiply_adds;
-    if let Some(memory) = request.memory {
+    if slices {
         let limit = slicing::Limit {
-            peak: (memory as f64).log2(),
+            peak: request.memory.map_or(f64::INFINITY, |m| (m as f64).log2()),
+            slices: request.slices,
             price: Price::of(request.objective),
             seed: request.seed,
             work: rest,
         };
-        (plan, price) = slicing::fit(shape, plan, &limit, &until)?;
+        (plan, price) = slicing::fit(shape, &plan, &limit, &until)?;
     }
     Ok(Found {
         widest_step_bound: widest_step_bound(shape, &net),
@@ -235,7 +238,9 @@ fn order_net(
         let solved = task(net, Some(&plan.steps), work)?;
         return Ok((solved.steps.clone(), solved));
     }
-    let all = parts::split(net);
+    let whole = net.tensors.len() <= request.exhaustive.min(exhaustive::DENSE)
+        && matches!(request.method, Method::Portfolio | Method::Exhaustive);
+    let all = if whole { vec![parts::whole(net)] } else { parts::split(net) };
     let weight = |p: &parts::Part| (p.tensors.len() as u64).pow(2);
     let total: u64 = all
         .iter()

@@ -16,55 +16,122 @@ use super::windows;
 use super::{Cost, OrderError, Plan, Shape, cost};
 use crate::tensor::Label;
 use crate::watch::{News, Watch};
+use rand::Rng;
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::SeedableRng;
+use rayon::prelude::*;
 
 /// Labels tried in full at each slicing.
-const TRIED: usize = 16;
+const TRIED: usize = 12;
+/// Attempts side by side; fixed, so that the threads do not matter.
+const ATTEMPTS: u64 = 8;
 
 /// What a sliced plan must keep to.
 pub(crate) struct Limit {
-    /// log2 of the elements that may be alive, the whole result included where there are slices.
+    /// log2 of the elements that may be alive, the whole result included where there are
+    /// slices.
     pub peak: f64,
+    /// Fewest slices.
+    pub slices: u128,
     pub price: Price,
     pub seed: u64,
     pub work: u64,
 }
 
-/// Slices and refines until the plan fits.
+impl Limit {
+    fn met(&self, price: &Cost, result: f64) -> bool {
+        price.slices >= self.slices && needed(price, result) <= self.peak + 1e-9
+    }
+}
+
+/// log2 of the elements that a plan keeps alive; `result` bits are those of its whole result,
+/// which slices are gathered in.
+fn needed(price: &Cost, result: f64) -> f64 {
+    if price.slices > 1 {
+        log2_sum(price.log2_peak_elements, result)
+    } else {
+        price.log2_peak_elements
+    }
+}
+
+/// Slices and refines until the plan fits; the cheapest of several attempts.
 pub(crate) fn fit(
     shape: &Shape,
-    plan: Plan,
+    plan: &Plan,
     limit: &Limit,
     watch: &dyn Watch,
 ) -> Result<(Plan, Cost), OrderError> {
-    let mut rng = ChaCha8Rng::seed_from_u64(limit.seed ^ 0x51_1c_e5);
+    let start = (plan.clone(), cost(shape, plan)?);
     let result: f64 = shape.open.iter().map(|l| (shape.sizes[l.index()] as f64).log2()).sum();
-    let refused = |needed: f64| OrderError::Memory { limit: limit.peak.exp2() as u64, needed };
-    let needed = |price: &Cost| {
-        if price.slices > 1 {
-            log2_sum(price.log2_peak_elements, result)
-        } else {
-            price.log2_peak_elements
+    if limit.met(&start.1, result) {
+        return Ok(start);
+    }
+    if result > limit.peak {
+        return Err(refused(limit, result));
+    }
+    watch.tell(News::Stage("slicing"));
+    let made: Vec<Result<(Plan, Cost), OrderError>> = (0..ATTEMPTS)
+        .into_par_iter()
+        .map(|i| attempt(shape, start.clone(), result, limit, i, watch))
+        .collect();
+    let mut best: Option<(Plan, Cost)> = None;
+    let mut error = None;
+    for outcome in made {
+        match outcome {
+            Ok(found) => {
+                if best
+                    .as_ref()
+                    .is_none_or(|b| found.1.log10_multiply_adds < b.1.log10_multiply_adds - 1e-12)
+                {
+                    best = Some(found);
+                }
+            }
+            Err(e) => error = error.or(Some(e)),
         }
+    }
+    best.ok_or_else(|| error.unwrap_or(OrderError::Empty))
+}
+
+fn refused(limit: &Limit, needed: f64) -> OrderError {
+    OrderError::Memory { limit: limit.peak.exp2() as u64, needed }
+}
+
+/// One attempt; the first takes the label that looks best each time, the others one of the
+/// best three.
+fn attempt(
+    shape: &Shape,
+    start: (Plan, Cost),
+    result: f64,
+    limit: &Limit,
+    number: u64,
+    watch: &dyn Watch,
+) -> Result<(Plan, Cost), OrderError> {
+    let mut rng = ChaCha8Rng::seed_from_u64(limit.seed);
+    rng.set_stream(2000 + number);
+    let work = limit.work / ATTEMPTS;
+    let doublings = if limit.peak.is_finite() {
+        start.1.log2_peak_elements - limit.peak
+    } else {
+        (limit.slices as f64).log2()
     };
-    let mut now = (plan, Cost::default());
-    now.1 = cost(shape, &now.0)?;
-    let start = now.1.log2_peak_elements;
-    let mut rounds = 0u64;
-    while needed(&now.1) > limit.peak + 1e-9 {
-        if result > limit.peak {
-            return Err(refused(result));
+    let share = work / (doublings.max(1.0) as u64 + 2);
+    let mut now = start;
+    if number >= ATTEMPTS / 2 {
+        // Another tree to begin with.
+        refine(shape, &mut now, limit, 0.4, share, &mut rng, watch)?;
+    }
+    while !limit.met(&now.1, result) {
+        let choices = if number == 0 { 1 } else { 3 };
+        let mut next = candidates(shape, &now, limit)?;
+        if next.is_empty() {
+            return Err(refused(limit, needed(&now.1, result)));
         }
-        let next = slice_once(shape, &now)?.ok_or_else(|| refused(needed(&now.1)))?;
-        now = next;
-        rounds += 1;
-        // The first slicings shape all that follows, so all get the same share.
-        let share = limit.work / ((start - limit.peak).max(1.0) as u64 + 1);
-        if !watch.stop() && limit.work > 0 {
-            refine(shape, &mut now, limit, share, &mut rng, watch)?;
+        next.truncate(choices);
+        let at = rng.random_range(0..next.len());
+        now = next.swap_remove(at);
+        if !watch.stop() && share > 0 {
+            refine(shape, &mut now, limit, 0.15, share, &mut rng, watch)?;
         }
-        watch.tell(News::Progress { done: rounds, total: 0 });
     }
     // Needless labels go, the earliest first: refinement may have made them so.
     let mut at = 0;
@@ -72,18 +139,28 @@ pub(crate) fn fit(
         let mut fewer = now.0.clone();
         fewer.sliced.remove(at);
         let price = cost(shape, &fewer)?;
-        if needed(&price) <= limit.peak + 1e-9 {
+        if limit.met(&price, result) {
             now = (fewer, price);
         } else {
             at += 1;
         }
     }
+    if !watch.stop() && share > 0 {
+        refine(shape, &mut now, limit, 0.1, share, &mut rng, watch)?;
+    }
     Ok(now)
 }
 
-/// Slices the label that costs least for each halving of the peak; `None` where none helps.
-fn slice_once(shape: &Shape, now: &(Plan, Cost)) -> Result<Option<(Plan, Cost)>, OrderError> {
+/// The plan with one label more sliced, for the labels that do most good, best first: least
+/// growth of multiply-adds for each halving of the peak (or, where only slices are asked for,
+/// for each doubling of their number).
+fn candidates(
+    shape: &Shape,
+    now: &(Plan, Cost),
+    limit: &Limit,
+) -> Result<Vec<(Plan, Cost)>, OrderError> {
     let (plan, before) = now;
+    let by_peak = limit.peak.is_finite();
     let net = Net::of(shape, &plan.sliced);
     let tree = Tree::new(&net, &plan.steps);
     let total = tree.total(Price::ADDS);
@@ -104,43 +181,64 @@ fn slice_once(shape: &Shape, now: &(Plan, Cost)) -> Result<Option<(Plan, Cost)>,
             set.iter().for_each(|&l| on_large[l as usize] += share);
         }
     }
-    // Lone open labels are on no shared list; where they fill the largest tensors they count.
-    let mut candidates: Vec<(f64, Label)> = Vec::new();
+    // A lone open label is on no shared list: it is on its tensor and on all that this
+    // becomes part of.
+    for (t, labels) in shape.tensors.iter().enumerate() {
+        if net.lone[t] == 0.0 {
+            continue;
+        }
+        let (mut share, mut large) = (0.0, 0.0);
+        let mut v = t;
+        loop {
+            let s = (tree.size[v] - largest).exp2();
+            large += if s > 0.05 { s } else { 0.0 };
+            let up = tree.parent[v];
+            if up == super::tree::NONE {
+                break;
+            }
+            v = up as usize;
+            share += (tree.met[v] - total).exp2();
+        }
+        for l in labels {
+            if net.open[l.index()] && within[l.index()] == 0.0 {
+                within[l.index()] = share;
+                on_large[l.index()] = large;
+            }
+        }
+    }
+    let mut list: Vec<(f64, Label)> = Vec::new();
     for l in (0..shape.sizes.len() as u32).map(Label::new) {
         let size = shape.sizes[l.index()];
         if size < 2 || plan.sliced.contains(&l) {
             continue;
         }
-        if on_large[l.index()] > 0.0 {
-            let size = size as f64;
-            let growth = (size * (1.0 - (1.0 - 1.0 / size) * within[l.index()])).log2();
-            candidates.push((growth / size.log2() - 0.25 * on_large[l.index()].min(4.0), l));
-        } else if net.open[l.index()] && within[l.index()] == 0.0 {
-            candidates.push((1.0, l));
+        let size = size as f64;
+        let growth = (size * (1.0 - (1.0 - 1.0 / size) * within[l.index()].min(1.0))).log2();
+        if on_large[l.index()] > 0.0 || (!by_peak && within[l.index()] > 0.0) {
+            list.push((growth / size.log2() - 0.25 * on_large[l.index()].min(4.0), l));
         }
     }
-    candidates.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
-    let mut best: Option<(f64, Plan, Cost)> = None;
-    let (mut tried, mut helped) = (0, 0);
-    for (_, l) in candidates {
-        if tried >= TRIED && (helped > 0 || tried >= 64 * TRIED) {
+    list.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
+    let mut found: Vec<(f64, Plan, Cost)> = Vec::new();
+    for (tried, (_, l)) in list.into_iter().enumerate() {
+        if (tried >= TRIED && !found.is_empty()) || tried >= 64 * TRIED {
             break;
         }
-        tried += 1;
         let mut next = plan.clone();
         next.sliced.push(l);
         let price = cost(shape, &next)?;
-        let gain = before.log2_peak_elements - price.log2_peak_elements;
-        if gain <= 1e-9 {
-            continue;
-        }
-        helped += 1;
-        let loss = (price.log10_multiply_adds - before.log10_multiply_adds).max(0.0) + 0.01;
-        if best.as_ref().is_none_or(|b| loss / gain < b.0) {
-            best = Some((loss / gain, next, price));
+        let gain = if by_peak {
+            before.log2_peak_elements - price.log2_peak_elements
+        } else {
+            (shape.sizes[l.index()] as f64).log2()
+        };
+        if gain > 1e-9 {
+            let loss = (price.log10_multiply_adds - before.log10_multiply_adds).max(0.0) + 0.01;
+            found.push((loss / gain, next, price));
         }
     }
-    Ok(best.map(|(_, p, c)| (p, c)))
+    found.sort_by(|a, b| a.0.total_cmp(&b.0));
+    Ok(found.into_iter().map(|(_, p, c)| (p, c)).collect())
 }
 
 /// Refines the tree of a sliced plan; the plan changes only where multiply-adds fall and the peak does not rise.
@@ -148,13 +246,14 @@ fn refine(
     shape: &Shape,
     now: &mut (Plan, Cost),
     limit: &Limit,
+    hot: f64,
     work: u64,
     rng: &mut ChaCha8Rng,
     watch: &dyn Watch,
 ) -> Result<(), OrderError> {
     let net = Net::of(shape, &now.0.sliced);
     let mut tree = Tree::new(&net, &now.0.steps);
-    let cold = Schedule { hot: 0.15, cold: 0.01, work: work / 2 };
+    let cold = Schedule { hot, cold: 0.01, work: work / 2 };
     let price = limit.price.within(tree.widest());
     anneal::run(&net, &mut tree, price, cold, rng, watch);
     windows::pass(&net, &mut tree, price, 8, work / 2, watch);
@@ -162,8 +261,9 @@ fn refine(
     let plan = Plan { steps, sliced: now.0.sliced.clone() };
     let price = cost(shape, &plan)?;
     let better = price.log10_multiply_adds < now.1.log10_multiply_adds
-        && price.log2_peak_elements <= now.1.log2_peak_elements + 1e-9;
-    let smaller = price.log2_peak_elements < now.1.log2_peak_elements - 0.5
+        && (!limit.peak.is_finite() || price.log2_peak_elements <= now.1.log2_peak_elements + 1e-9);
+    let smaller = limit.peak.is_finite()
+        && price.log2_peak_elements < now.1.log2_peak_elements - 0.3
         && price.log10_multiply_adds <= now.1.log10_multiply_adds + 0.1;
     if better || smaller {
         *now = (plan, price);
