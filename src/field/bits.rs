@@ -86,15 +86,28 @@ impl Bits {
                 }
             }
             let columns = &pivots[first..];
+            let side_by_side = columns[found - 1] - columns[0] + 1 == found;
             let start = if full { 0 } else { first + found };
             for r in start..self.rows {
                 if (first..first + found).contains(&r) {
                     continue;
                 }
+                // All columns of a group lie in one word (see `gather`), mostly side by side.
+                let word = self.data[r * self.stride + columns[0] / 64];
                 let mut place = [0usize; TABLES];
-                for (i, &c) in columns.iter().enumerate() {
-                    let bit = self.data[r * self.stride + c / 64] >> (c % 64) & 1;
-                    place[i / TABLE_BITS] |= (bit as usize) << (i % TABLE_BITS);
+                if side_by_side {
+                    let bits = word >> (columns[0] % 64);
+                    for (t, (p, &size)) in place.iter_mut().zip(&sizes).enumerate() {
+                        *p = (bits >> (t * TABLE_BITS)) as usize & ((1 << size) - 1);
+                    }
+                } else {
+                    for (i, &c) in columns.iter().enumerate() {
+                        let bit = (word >> (c % 64) & 1) as usize;
+                        place[i / TABLE_BITS] |= bit << (i % TABLE_BITS);
+                    }
+                }
+                if place == [0; TABLES] {
+                    continue;
                 }
                 let row = &mut self.data[r * self.stride + from..(r + 1) * self.stride];
                 let piece = |t: usize| {

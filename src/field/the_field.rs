@@ -34,7 +34,12 @@ struct Tables {
     log: Vec<u16>,
     /// zech[k] = log(1 + g^k), or `NONE` where 1 + g^k = 0; odd extension fields only.
     zech: Vec<u32>,
+    /// sum[a·q + b] = a + b; odd extension fields up to `MOST_SUMMED` elements only.
+    sum: Vec<u16>,
 }
+
+/// Largest order of an odd extension field whose sums are tabulated (128 KiB).
+const MOST_SUMMED: u32 = 256;
 
 const NONE: u32 = u32::MAX;
 
@@ -82,7 +87,8 @@ impl Field {
             }
             v = out;
         }
-        let mut field = Tables { order: q, prime: p, degree: m, modulus, exp, log, zech: vec![] };
+        let mut field =
+            Tables { order: q, prime: p, degree: m, modulus, exp, log, zech: vec![], sum: vec![] };
         if p != 2 && m > 1 {
             field.zech = (0..q - 1)
                 .map(|k| {
@@ -92,6 +98,12 @@ impl Field {
                     if sum == 0 { NONE } else { u32::from(field.log[sum as usize]) }
                 })
                 .collect();
+        }
+        if p != 2 && m > 1 && q <= MOST_SUMMED {
+            let plain = Self(Arc::new(field));
+            let sum = (0..q * q).map(|k| plain.add(k / q, k % q) as u16).collect();
+            field = Arc::into_inner(plain.0).expect("the only handle");
+            field.sum = sum;
         }
         Ok(Self(Arc::new(field)))
     }
@@ -242,6 +254,10 @@ impl Field {
     }
     pub(super) fn log_table(&self) -> &[u16] {
         &self.0.log
+    }
+    /// All sums, row by row, where they are tabulated.
+    pub(super) fn sum_table(&self) -> &[u16] {
+        &self.0.sum
     }
     pub(super) fn exp_table(&self) -> &[u16] {
         &self.0.exp

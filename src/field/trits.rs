@@ -130,13 +130,16 @@ impl Trits {
                 if (first..first + found).contains(&r) {
                     continue;
                 }
+                // All columns of a group lie in one word (see `gather`).
+                let at = r * self.stride + columns[0] / 64 * 2;
+                let word = [self.data[at], self.data[at + 1]];
                 let mut place = [0usize; TABLES];
                 let mut power = 1;
                 for (i, &c) in columns.iter().enumerate() {
                     if i % TABLE_TRITS == 0 {
                         power = 1;
                     }
-                    let v = self.get(r, c) as usize;
+                    let v = entry(&word, c % 64) as usize;
                     place[i / TABLE_TRITS] += (3 - v) % 3 * power;
                     power *= 3;
                 }

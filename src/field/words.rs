@@ -91,14 +91,32 @@ pub(super) fn add_multiple(field: &Field, dst: &mut [u16], src: &[u16], c: u32) 
     }
     let (log, exp) = (field.log_table(), field.exp_table());
     let lc = usize::from(log[c as usize]);
-    for (d, &s) in dst.iter_mut().zip(src) {
-        if s != 0 {
-            let product = exp[lc + usize::from(log[usize::from(s)])];
-            *d = if field.prime() == 2 {
-                *d ^ product
-            } else {
-                field.add(u32::from(*d), u32::from(product)) as u16
-            };
+    let times = |s: u16| if s == 0 { 0 } else { exp[lc + usize::from(log[usize::from(s)])] };
+    let q = field.order() as usize;
+    if q <= 256 {
+        // One short table of multiples of c serves the whole row.
+        let mut multiple = [0u16; 256];
+        for (v, m) in multiple[..q].iter_mut().enumerate() {
+            *m = times(v as u16);
         }
+        if field.prime() == 2 {
+            for (d, &s) in dst.iter_mut().zip(src) {
+                *d ^= multiple[usize::from(s) & 255];
+            }
+        } else {
+            let sums = field.sum_table();
+            for (d, &s) in dst.iter_mut().zip(src) {
+                *d = sums[usize::from(*d) * q + usize::from(multiple[usize::from(s) & 255])];
+            }
+        }
+        return;
+    }
+    for (d, &s) in dst.iter_mut().zip(src) {
+        let product = times(s);
+        *d = if field.prime() == 2 {
+            *d ^ product
+        } else {
+            field.add(u32::from(*d), u32::from(product)) as u16
+        };
     }
 }
