@@ -1,5 +1,7 @@
 //! Plans run: against the definition, against NumPy, against exact counts.
 
+#[path = "contract/algebras.rs"]
+mod algebras;
 #[path = "contract/counts.rs"]
 mod counts;
 
@@ -160,8 +162,8 @@ fn ladder(n: usize, sparse: bool) -> Problem {
     let mut tensors = Vec::new();
     let mut blocks = Vec::new();
     for i in 0..n {
-        for side in 0..2 {
-            tensors.push(vec![along[i][side], rungs[i], along[i + 1][side]]);
+        for (side, (&from, &to)) in along[i].iter().zip(&along[i + 1]).enumerate() {
+            tensors.push(vec![from, rungs[i], to]);
             let Dense::Complex(mut a) = random_dense(&[3, 2, 3], true, &mut rng) else { continue };
             if sparse {
                 for (k, x) in a.iter_mut().enumerate() {
@@ -195,7 +197,7 @@ fn sparse_and_dense_agree_and_sparse_does_less() {
             .map(|(t, b)| {
                 let mut a = b.entries().to_dense().to_complex();
                 for (k, x) in a.iter_mut().enumerate() {
-                    if (k * k + t + seed as usize) % 3 > 0 {
+                    if !(k * k + t + seed as usize).is_multiple_of(3) {
                         *x = Complex64::default();
                     }
                 }

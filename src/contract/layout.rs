@@ -46,6 +46,9 @@ impl Numbers {
 /// Multiply-adds from which on a step's result has more than one candidate.
 const WORTH_CHOOSING: u128 = 1 << 12;
 
+/// Multiply-adds below which the operands are taken as they come.
+const WORTH_LOOKING: u128 = 256;
+
 /// Row-major steps of axes in this order.
 pub(super) fn strides(order: &[Label], sizes: &[usize]) -> Vec<usize> {
     let mut steps = vec![1; order.len()];
@@ -106,8 +109,8 @@ impl Layout {
             candidates: Vec::new(),
             choices: Vec::new(),
         };
-        p.from_the_root();
-        p.from_the_leaves();
+        p.offer_orders();
+        p.price_choices();
         p.settle()
     }
 }
@@ -120,7 +123,7 @@ impl Planner<'_> {
         self.program.entries(labels) as f64
     }
 
-    fn from_the_root(&mut self) {
+    fn offer_orders(&mut self) {
         let n = self.leaves();
         let nodes = n + self.program.steps.len();
         self.liked = vec![Vec::new(); nodes];
@@ -222,10 +225,13 @@ impl Planner<'_> {
         options
     }
 
-    fn from_the_leaves(&mut self) {
+    fn price_choices(&mut self) {
         let n = self.leaves();
         for (number, step) in self.program.steps.iter().enumerate() {
-            let options = step.operands.map(|o| self.options(o));
+            let mut options = step.operands.map(|o| self.options(o));
+            if step.multiply_adds < WORTH_LOOKING {
+                options.iter_mut().for_each(|o| o.truncate(1));
+            }
             let mut choices = Vec::with_capacity(self.candidates[n + number].len());
             for out in &self.candidates[n + number] {
                 let mut best: Option<Choice> = None;

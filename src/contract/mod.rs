@@ -32,6 +32,6 @@ pub use algebra::Algebra;
 pub use error::ContractError;
 pub use program::{Leaf, Step};
 pub use request::{Forecast, Kind, Outcome, Precision, Problem, Request};
-pub use solve::{forecast, run, share, solve};
+pub use solve::{forecast, on_algebra, run, share, solve};
 pub use team::{Alone, Team};
 pub use world::world;

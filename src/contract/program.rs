@@ -110,12 +110,6 @@ impl Program {
             steps.push(Step { operands, batch, rows, sum, columns, multiply_adds });
             labels.push(made);
         }
-        for (tensor, set) in labels.iter().enumerate() {
-            let bits: f64 = set.iter().map(|l| (sizes[l.index()] as f64).log2()).sum();
-            if bits > f64::from(BITS) {
-                return Err(ContractError::TooLarge { tensor, bits: BITS });
-            }
-        }
         Ok(Self {
             open: shape.open.iter().copied().filter(|l| !gone[l.index()]).collect(),
             sliced: plan.sliced.iter().map(|&l| (l, shape.sizes[l.index()])).collect(),
@@ -124,6 +118,20 @@ impl Program {
             leaves,
             steps,
         })
+    }
+
+    /// Refuses tensors with more entries than memory can address.
+    pub fn addressable(&self) -> Result<(), ContractError> {
+        let bits = |labels: &mut dyn Iterator<Item = &Label>| -> f64 {
+            labels.map(|l| (self.sizes[l.index()] as f64).log2()).sum()
+        };
+        let leaves = self.leaves.iter().map(|l| bits(&mut l.labels.iter()));
+        let made =
+            self.steps.iter().map(|s| bits(&mut s.batch.iter().chain(&s.rows).chain(&s.columns)));
+        match leaves.chain(made).position(|b| b > f64::from(BITS)) {
+            Some(tensor) => Err(ContractError::TooLarge { tensor, bits: BITS }),
+            None => Ok(()),
+        }
     }
 
     /// Product of the sizes of these labels.

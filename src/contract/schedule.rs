@@ -37,6 +37,13 @@ struct Maker<'a> {
 }
 
 impl Schedule {
+    /// The steps as the plan lists them, one after the other; the peak is not reckoned.
+    pub fn in_order(program: &Program) -> Self {
+        let steps: Vec<Item> = (0..program.steps.len()).map(Item::Step).collect();
+        let root = (!steps.is_empty()).then_some(0);
+        Self { segments: vec![steps], root, peak: 0 }
+    }
+
     /// Plans the sequence for these numbers. `block_entries` holds the entries of
     /// each leaf's block. Subtrees run side by side only if `room` bytes suffice for it.
     pub fn plan(

@@ -8,18 +8,19 @@ use crate::tensor::Label;
 /// Tensors whose labels are tried.
 const LARGEST: usize = 6;
 
+fn entries(program: &Program, labels: &[Label]) -> f64 {
+    labels.iter().map(|l| program.sizes[l.index()] as f64).product()
+}
+
 /// Entries alive at once in one slice, if every step's operands and result are; the large
 /// steps decide, so the exact schedule does not matter here.
 fn widest(program: &Program) -> f64 {
     let n = program.leaves.len();
-    let mut sizes: Vec<f64> =
-        program.leaves.iter().map(|l| program.entries(&l.labels) as f64).collect();
+    let mut sizes: Vec<f64> = program.leaves.iter().map(|l| entries(program, &l.labels)).collect();
     let mut most: f64 = sizes.iter().copied().fold(0.0, f64::max);
     for step in &program.steps {
-        let out: f64 = [&step.batch, &step.rows, &step.columns]
-            .iter()
-            .map(|g| program.entries(g) as f64)
-            .product();
+        let out: f64 =
+            [&step.batch, &step.rows, &step.columns].iter().map(|g| entries(program, g)).product();
         let [a, b] = step.operands;
         most = most.max(sizes[a] + sizes[b] + out);
         sizes.push(out);
@@ -39,7 +40,7 @@ pub(super) fn one_more(shape: &Shape, plan: &Plan) -> Result<Option<Plan>, Contr
     for step in &program.steps {
         sets.push([&step.batch[..], &step.rows, &step.columns].concat());
     }
-    sets.sort_by_cached_key(|s| std::cmp::Reverse(program.entries(s)));
+    sets.sort_by(|a, b| entries(&program, b).total_cmp(&entries(&program, a)));
     let mut tried: Vec<Label> = sets
         .iter()
         .take(LARGEST)

@@ -9,7 +9,8 @@ use super::slices::{self, Setup};
 use super::slicing;
 use super::sparse;
 use super::team::{Alone, Team};
-use super::{ContractError, Forecast, Kind, Outcome, Precision, Problem, Request};
+use super::walk::Walk;
+use super::{Algebra, ContractError, Forecast, Kind, Outcome, Precision, Problem, Request};
 use crate::block::{Block, Entries};
 use crate::linalg::Scalar;
 use crate::network::Network;
@@ -125,6 +126,37 @@ pub fn share(
     }))
 }
 
+/// Runs a plan on any algebra, in the plan's own order of steps, and gives the last tensor.
+/// Labels that the plan slices are not sliced: an algebra whose tensors are small has no need
+/// of it.
+///
+/// # Errors
+/// [`ContractError`]: the plan or the blocks do not fit the shape, the caller stopped it, or
+/// whatever the algebra finds.
+pub fn on_algebra<A: Algebra>(
+    problem: &Problem,
+    plan: &Plan,
+    algebra: &A,
+    watch: &dyn Watch,
+) -> Result<A::Tensor, ContractError> {
+    check(problem)?;
+    let plan = Plan { steps: plan.steps.clone(), sliced: Vec::new() };
+    let program = Program::compile(&problem.shape, &plan)?;
+    let schedule = Schedule::in_order(&program);
+    let walk = Walk {
+        algebra,
+        program: &program,
+        schedule: &schedule,
+        blocks: &problem.blocks,
+        fixed: &[],
+        before: &|_| match watch.stop() {
+            true => Err(ContractError::Stopped { done: 0, slices: 1 }),
+            false => Ok(()),
+        },
+    };
+    walk.run()
+}
+
 /// What [`solve`] would take, without doing it.
 ///
 /// # Errors
@@ -219,6 +251,7 @@ impl Ready {
     ) -> Result<Self, ContractError> {
         let shape = &problem.shape;
         let program = Program::compile(shape, plan)?;
+        program.addressable()?;
         let layout = Layout::plan(&program, numbers);
         let entries: Vec<u64> =
             problem.blocks.iter().map(|b| b.dims().iter().map(|&d| d as u64).product()).collect();

@@ -102,8 +102,10 @@ pub(crate) unsafe fn multiply_here<T: Scalar>(
     one(c, a, b, add);
 }
 
-/// Multiply-adds below which a piece is not split further.
-const PIECE: u128 = 1 << 25;
+/// Work below which a piece is not split further: multiply-adds, and as many as take the
+/// time of moving one entry for each entry of the three matrices.
+const PIECE: usize = 1 << 22;
+const ENTRY: usize = 8;
 /// Shortest side that is split.
 const SIDE: usize = 256;
 
@@ -112,8 +114,11 @@ const SIDE: usize = 256;
 /// on the number of threads.
 fn split<T: Scalar>(c: MatMut<'_, T>, a: MatRef<'_, T>, b: MatRef<'_, T>, add: bool) {
     let (m, n, k) = (c.nrows(), c.ncols(), a.ncols());
-    let long = m.max(n);
-    if long <= SIDE || (m as u128) * (n as u128) * (k.max(1) as u128) <= PIECE {
+    let work = m
+        .saturating_mul(n)
+        .saturating_mul(k)
+        .saturating_add(ENTRY.saturating_mul(m * k + k * n + m * n));
+    if m.max(n) <= SIDE || work <= PIECE {
         one(c, a, b, add);
     } else if m >= n {
         let at = (m / 2).next_multiple_of(32);

@@ -46,7 +46,7 @@ pub(crate) struct Loops {
 /// Multiply-adds below which threads are not worth their trouble.
 const ALONE: u128 = 1 << 17;
 /// Multiply-adds of one product from which on the product itself is spread over threads.
-const WIDE: u128 = 1 << 24;
+const WIDE: u128 = 1 << 22;
 /// Matrix products below this many multiply-adds give way to a loop along a batch leg.
 const TINY: usize = 100;
 /// Summed entries from which on the sum itself is cut into pieces for threads.

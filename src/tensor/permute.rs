@@ -37,18 +37,8 @@ struct Loop {
 pub fn permuted<T: Copy + Send + Sync>(array: &ArrayViewD<'_, T>, order: &[usize]) -> ArrayD<T> {
     let view = array.clone().permuted_axes(IxDyn(order));
     let dims: Vec<usize> = view.shape().to_vec();
-    let mut out: Vec<T> = Vec::with_capacity(view.len());
-    let loops: Vec<Loop> = row_major(&dims)
-        .zip(view.strides())
-        .zip(&dims)
-        .map(|((to, &from), &size)| Loop { size, from, to })
-        .collect();
-    // SAFETY: the view vouches for its strides; the result's are those of a fresh buffer of
-    // as many entries, each written once before the length is set.
-    unsafe {
-        run(&loops, view.as_ptr(), out.as_mut_ptr());
-        out.set_len(view.len());
-    }
+    // SAFETY: the view vouches for its pointer, sizes and strides.
+    let out = unsafe { collect(&dims, view.strides(), view.as_ptr()) };
     ArrayD::from_shape_vec(IxDyn(&dims), out).expect("the buffer has one entry a place")
 }
 
@@ -77,6 +67,31 @@ pub(crate) fn gather<T: Copy + Send + Sync>(
         .collect();
     // SAFETY: the furthest read and the number of writes were just checked.
     unsafe { run(&loops, from.as_ptr(), to.as_mut_ptr().cast::<T>()) }
+}
+
+/// The entries of a strided array in row-major order.
+///
+/// # Safety
+/// Every place first + Σ index·stride with indices below `dims` may be read.
+pub(super) unsafe fn collect<T: Copy + Send + Sync>(
+    dims: &[usize],
+    strides: &[isize],
+    first: *const T,
+) -> Vec<T> {
+    let entries = dims.iter().product();
+    let mut out: Vec<T> = Vec::with_capacity(entries);
+    let loops: Vec<Loop> = row_major(dims)
+        .zip(strides)
+        .zip(dims)
+        .map(|((to, &from), &size)| Loop { size, from, to })
+        .collect();
+    // SAFETY: the caller's promise; the result's places are those of a fresh buffer, each
+    // written once before the length is set.
+    unsafe {
+        run(&loops, first, out.as_mut_ptr());
+        out.set_len(entries);
+    }
+    out
 }
 
 fn row_major(dims: &[usize]) -> impl Iterator<Item = isize> + use<> {
@@ -109,9 +124,9 @@ fn cut(loops: &mut Vec<Loop>, at: usize) -> Option<Rest> {
     if l.size < 2 * RUN {
         return None;
     }
-    let block = (RUN..=2 * RUN).find(|b| l.size % b == 0).unwrap_or(RUN);
+    let block = (RUN..=2 * RUN).find(|b| l.size.is_multiple_of(*b)).unwrap_or(RUN);
     let whole = l.size / block;
-    let rest = (l.size % block != 0).then(|| {
+    let rest = (!l.size.is_multiple_of(block)).then(|| {
         let mut others = loops.clone();
         others[at].size = l.size % block;
         let done = (whole * block) as isize;

@@ -39,6 +39,13 @@ pub fn reduced<T: Scalar>(
     if array.is_empty() {
         return (out_labels, ArrayD::from_elem(IxDyn(&shape), T::zero()));
     }
+    if summed.is_empty() {
+        let steps: Vec<isize> = kept.iter().map(|&i| strides[i]).collect();
+        // SAFETY: Σ index·stride with indices below the sizes is a place of the view.
+        let values = unsafe { super::permute::collect(&shape, &steps, array.as_ptr()) };
+        let out = ArrayD::from_shape_vec(IxDyn(&shape), values).expect("one value a place");
+        return (out_labels, out);
+    }
     // A kept label may have size 0 only where the array is empty, so all counts are ≥ 1.
     let total = |which: &[usize]| which.iter().map(|&i| sizes[i]).product::<usize>();
     let walk = |which: &[usize], k: usize| {

@@ -287,7 +287,7 @@ fn ising_values_to_twelve_digits() {
         (Graph::torus(4, 4), kc, 5_509_120.0),
         (Graph::torus(4, 4), 0.3, 357_011.518_773_654),
         (Graph::torus(4, 4), 0.6, 513_383_087.827_778),
-        (Graph::grid(3, 3), kc, 1812.077_343_935),
+        (Graph::grid(3, 3), kc, 1_812.077_343_935),
         (Graph::grid(4, 4), kc, 870_058.075_100_652_8),
     ];
     for (graph, k, want) in known {
