@@ -3,7 +3,7 @@
 use crate::contract::{ContractError, Team};
 use mpi::environment::Universe;
 use mpi::topology::SimpleCommunicator;
-use mpi::traits::{Communicator, CommunicatorCollectives, Destination, Root, Source};
+use mpi::traits::{Communicator, Destination, Root, Source};
 use std::sync::Mutex;
 
 /// Messages are sent in pieces: MPI counts entries in 31 bits.
