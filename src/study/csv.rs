@@ -1,5 +1,6 @@
 //! Tidy tables: one observation a row, units in the names of the columns.
 
+use super::questions::Finding;
 use super::result::{CaseResult, StudyResult};
 use std::fmt::Write;
 
@@ -70,6 +71,67 @@ pub fn by_length(result: &StudyResult) -> String {
                 l.least_nats.to_string(),
                 l.largest_nats.to_string(),
                 l.mean_cut_nats.to_string(),
+            ]);
+            line(&mut out, &cells);
+        }
+    }
+    out
+}
+
+/// The table `erasure.csv`; empty text where no curve was asked for.
+pub fn erasure(result: &StudyResult) -> String {
+    let mut out = String::new();
+    for c in &result.cases {
+        for f in &c.findings {
+            let Finding::Erasure(e) = f else { continue };
+            if out.is_empty() {
+                out.push_str(
+                    "case,network,dimension,tensors,boundary_sites,bulk_leg,samples,erasure_rate,\
+                     greedy_failure,greedy_low_95,greedy_high_95,exact_failure,exact_low_95,exact_high_95\n",
+                );
+            }
+            for p in &e.points {
+                let mut cells = head(c);
+                cells.extend([
+                    e.leg.clone().unwrap_or_else(|| "all".into()),
+                    e.samples.to_string(),
+                    p.p.to_string(),
+                    p.greedy_failure.to_string(),
+                    p.greedy_low.to_string(),
+                    p.greedy_high.to_string(),
+                    shown(p.exact_failure),
+                    shown(p.exact_low),
+                    shown(p.exact_high),
+                ]);
+                line(&mut out, &cells);
+            }
+        }
+    }
+    out
+}
+
+/// The table `orders.csv`; empty text where no orders were asked for.
+pub fn orders(result: &StudyResult) -> String {
+    let mut out = String::new();
+    for c in &result.cases {
+        for f in &c.findings {
+            let Finding::Order(o) = f else { continue };
+            if out.is_empty() {
+                out.push_str(
+                    "case,network,dimension,tensors,boundary_sites,method,seed,log10_multiply_adds,\
+                     log2_peak_elements,log2_largest_tensor_elements,widest_step_labels,widest_step_bound_labels,optimal\n",
+                );
+            }
+            let mut cells = head(c);
+            cells.extend([
+                o.method.clone(),
+                o.seed.to_string(),
+                o.log10_multiply_adds.to_string(),
+                o.log2_peak_elements.to_string(),
+                o.log2_largest_tensor.to_string(),
+                o.widest_step.to_string(),
+                o.widest_step_bound.to_string(),
+                o.optimal.to_string(),
             ]);
             line(&mut out, &cells);
         }

@@ -35,9 +35,9 @@ pub const KEYS: &[(&str, &[&str])] = &[
     ("entropies.intervals", &["lengths", "every"]),
     ("entropies.union", &["count", "parts", "seed"]),
     ("entropies.region", &["name", "sites"]),
-    ("codes", &["isometry", "recover", "distance", "erasure"]),
+    ("codes", &["isometry", "recover", "distance", "distance_seconds", "erasure"]),
     ("codes.erasure", &["p", "samples", "legs"]),
-    ("orders", &["methods", "seconds", "seeds"]),
+    ("orders", &["methods", "work", "seeds"]),
     ("budget", &["memory", "multiply_adds", "seconds", "threads"]),
     ("output", &["csv", "figures", "arrays"]),
 ];
@@ -184,6 +184,9 @@ pub struct Codes {
     /// The distance of the code.
     #[serde(default)]
     pub distance: bool,
+    /// Seconds after which a distance comes back as bounds; 60 by default.
+    #[serde(default = "minute")]
+    pub distance_seconds: f64,
     /// An erasure curve.
     pub erasure: Option<Erasure>,
 }
@@ -201,6 +204,10 @@ pub struct Erasure {
     pub legs: String,
 }
 
+fn minute() -> f64 {
+    60.0
+}
+
 fn thousand() -> u64 {
     1000
 }
@@ -210,15 +217,22 @@ fn all() -> String {
 }
 
 /// Contraction orders to compare.
-#[derive(Debug, Clone, Default, Deserialize)]
+#[derive(Debug, Clone, Deserialize)]
 pub struct Orders {
     /// Methods by name; none: the portfolio alone.
     #[serde(default)]
     pub methods: Vec<String>,
-    /// Seconds a method; 2 by default.
-    pub seconds: Option<f64>,
-    /// Seeds a method; 1 by default.
-    pub seeds: Option<u64>,
+    /// Work a method and seed may spend, in labels touched; 2·10^8 by default. The same work
+    /// gives the same order on every machine.
+    #[serde(default = "much")]
+    pub work: u64,
+    /// Seeds a method, counted up from the study's; 1 by default.
+    #[serde(default = "one")]
+    pub seeds: u64,
+}
+
+fn much() -> u64 {
+    200_000_000
 }
 
 /// What the run may use.
@@ -312,6 +326,7 @@ impl StudyFile {
         text.clone_into(&mut file.text);
         place.clone_into(&mut file.place);
         file.check_values()?;
+        super::questions::all(&file)?;
         Ok(file)
     }
 
@@ -464,7 +479,6 @@ pub(super) fn whole_numbers(value: &Value) -> Option<Vec<u64>> {
 }
 
 /// A list of rates: a number, a list, or `"a..b:step"` with both ends included.
-#[allow(dead_code)]
 pub(super) fn rates(value: &Value) -> Option<Vec<f64>> {
     let number = |v: &Value| v.as_float().or_else(|| v.as_integer().map(|n| n as f64));
     let list = match value {

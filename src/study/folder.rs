@@ -24,6 +24,14 @@ impl Folder {
     pub fn path(&self) -> &Path {
         &self.path
     }
+    /// Makes a folder inside.
+    ///
+    /// # Errors
+    /// [`StudyError::Write`].
+    pub fn make(&self, name: &str) -> Result<(), StudyError> {
+        let path = self.path.join(name);
+        fs::create_dir_all(&path).map_err(|cause| StudyError::Write { path, cause })
+    }
     /// Writes a file beside its place and renames it.
     ///
     /// # Errors

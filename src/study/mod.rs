@@ -9,6 +9,7 @@
 //! | Which keys does a study file have? | [`mod@file`] |
 //! | Which networks does it mean? | [`case`] |
 //! | Which regions? | [`regions`] |
+//! | Which other questions? | [`questions`] |
 //! | What is an answer? | [`answer`], [`row`] |
 //! | What would it cost? | [`check`] |
 //! | Which files come out? | [`result`], [`csv`], [`arrays`], [`figures`], [`report`], [`provenance`] |
@@ -30,6 +31,7 @@ pub mod keys;
 mod layout;
 pub mod picture;
 pub mod provenance;
+pub mod questions;
 pub mod regions;
 pub mod report;
 pub mod result;

@@ -5,6 +5,7 @@
 
 use super::answer::Evidence;
 use super::case::Setting;
+use super::questions::Finding;
 use super::regions::Kind;
 use super::row::{self, Row};
 use super::run::{CaseOutcome, Outcome};
@@ -71,6 +72,9 @@ pub struct CaseResult {
     pub fit: Option<fit::Fit>,
     /// One object a region.
     pub regions: Vec<Row>,
+    /// Answers to the other questions.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub findings: Vec<Finding>,
 }
 
 /// A block of a network.
@@ -172,6 +176,7 @@ fn case(c: &CaseOutcome) -> CaseResult {
         ),
         by_length,
         regions: rows,
+        findings: c.findings.iter().flatten().cloned().collect(),
     }
 }
 

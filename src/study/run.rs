@@ -3,6 +3,7 @@
 use super::answer::{Answer, Evidence};
 use super::ask::{self, CaseAsker, Measure, Terms};
 use super::journal::{self, Journal};
+use super::questions::{self, Finding, Question};
 use super::regions::{self, Asked};
 use super::{Case, StudyError, StudyFile, case};
 use crate::entropy::{EntropyError, Wires};
@@ -49,6 +50,10 @@ pub struct CaseOutcome {
     pub asked: Vec<Asked>,
     /// Their answers; none for one that the run did not come to.
     pub answers: Vec<Option<Answer>>,
+    /// The other questions.
+    pub questions: Vec<Question>,
+    /// Their answers.
+    pub findings: Vec<Option<Finding>>,
 }
 
 /// What a run has found.
@@ -85,7 +90,17 @@ pub fn prepare(file: &StudyFile, watch: &dyn Watch) -> Result<Vec<CaseOutcome>, 
             None => Vec::new(),
         };
         let answers = vec![None; asked.len()];
-        out.push(CaseOutcome { case, network, asked, answers });
+        let questions = questions::all(file)?;
+        let findings = vec![None; questions.len()];
+        for q in &questions {
+            if let Question::Recovery { region } = q {
+                Region::parse(region, &network).map_err(|e| StudyError::Region {
+                    case: case.id.clone(),
+                    message: e.to_string(),
+                })?;
+            }
+        }
+        out.push(CaseOutcome { case, network, asked, answers, questions, findings });
     }
     Ok(out)
 }
@@ -113,10 +128,16 @@ pub fn run(
 ) -> Result<Outcome, StudyError> {
     let journal = Journal::open(folder)?;
     let terms = terms(file, limits);
-    let total = prepared.iter().map(|c| c.asked.len()).sum();
+    let total = prepared.iter().map(|c| c.asked.len() + c.questions.len()).sum();
     let mut outcome = Outcome { cases: prepared, kept: 0, total, done: 0 };
     let keys: Vec<Vec<String>> =
         outcome.cases.iter().map(|c| c.asked.iter().map(|a| key(c, a, &terms)).collect()).collect();
+    for c in &mut outcome.cases {
+        for (slot, question) in c.findings.iter_mut().zip(&c.questions) {
+            *slot = journal.get(&question_key(&c.case, question, limits));
+            outcome.kept += usize::from(slot.is_some());
+        }
+    }
     for (c, keys) in outcome.cases.iter_mut().zip(&keys) {
         for (slot, key) in c.answers.iter_mut().zip(keys) {
             *slot = journal.get(key);
@@ -181,6 +202,23 @@ pub fn run(
             }
         }
     }
+    for at in 0..outcome.cases.len() {
+        for q in 0..outcome.cases[at].questions.len() {
+            let c = &outcome.cases[at];
+            if c.findings[q].is_some() || watch.stop() {
+                continue;
+            }
+            let question = &c.questions[q];
+            watch.outer.tell(News::Stage(&format!("{}: {}", c.case.id, question.words())));
+            watch.count(&outcome);
+            let found = questions::answer(question, &c.network, limits.memory, &watch)?;
+            if let Some(finding) = found {
+                journal.put(&question_key(&c.case, question, limits), &finding)?;
+                outcome.cases[at].findings[q] = Some(finding);
+                outcome.done += 1;
+            }
+        }
+    }
     Ok(outcome)
 }
 
@@ -223,6 +261,16 @@ fn question(c: &CaseOutcome, r: usize, error: &EntropyError) -> StudyError {
         question: format!("region {}", c.asked[r].region.show(&c.network)),
         message: error.to_string(),
     }
+}
+
+/// Everything that the answer to a question depends on.
+fn question_key(case: &Case, question: &Question, limits: &Limits) -> String {
+    journal::key(&[
+        env!("CARGO_PKG_VERSION"),
+        &case.digest,
+        &question.key(),
+        &limits.memory.to_string(),
+    ])
 }
 
 /// Everything that the answer about a region depends on.

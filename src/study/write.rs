@@ -1,9 +1,11 @@
 //! The folder that a study leaves.
 
 use super::journal::Journal;
+use super::questions::Finding;
 use super::{
     Folder, Outcome, Provenance, StudyError, StudyFile, StudyResult, arrays, csv, figures, report,
 };
+use crate::order::{self, Shape};
 use std::fmt::Write;
 use std::path::Path;
 
@@ -44,6 +46,14 @@ pub fn write_results(
     let result = write_tables(path, file, outcome, provenance)?;
     let folder = Folder::open(path)?;
     folder.write("study.toml", file.text.as_bytes())?;
+    for (name, text) in
+        [("erasure.csv", csv::erasure(&result)), ("orders.csv", csv::orders(&result))]
+    {
+        if file.output.csv && !text.is_empty() {
+            folder.write(name, text.as_bytes())?;
+        }
+    }
+    plans(&folder, outcome)?;
     if file.output.arrays {
         arrays::write(&folder, outcome, &result)?;
     }
@@ -53,6 +63,24 @@ pub fn write_results(
     }
     folder.write("README.txt", readme(file, &result, provenance).as_bytes())?;
     Ok((result, left_out))
+}
+
+/// The plans of compared orders, as `plans/case-method-seed.json`; `lierne contract --plan`
+/// reads them.
+fn plans(folder: &Folder, outcome: &Outcome) -> Result<(), StudyError> {
+    for (number, c) in outcome.cases.iter().enumerate() {
+        for f in c.findings.iter().flatten() {
+            let Finding::Order(o) = f else { continue };
+            let name = format!("plans/{number}-{}-{}.json", o.method, o.seed);
+            let path = folder.path().join(&name);
+            folder.make("plans")?;
+            order::save(&path, &Shape::of(&c.network), &o.plan).map_err(|e| StudyError::Write {
+                path,
+                cause: std::io::Error::other(e.to_string()),
+            })?;
+        }
+    }
+    Ok(())
 }
 
 /// What the folder holds, for whoever finds it.
@@ -96,6 +124,16 @@ fn readme(file: &StudyFile, result: &StudyResult, provenance: &Provenance) -> St
             "spectrum_k_r for region r of case k: eigenvalue and multiplicity",
         ),
         ("figures/", file.output.figures, "the figures as SVG and PNG"),
+        (
+            "erasure.csv",
+            file.codes.as_ref().is_some_and(|c| c.erasure.is_some()),
+            "failure of recovery by erasure rate, with 95 % confidence intervals",
+        ),
+        (
+            "orders.csv",
+            file.orders.is_some(),
+            "contraction orders by method and seed; their plans are in plans/ as case-method-seed",
+        ),
         ("study.toml", true, "the study as it was asked"),
         ("provenance.json", true, "version, command, seed, machine, times"),
         (

@@ -70,8 +70,8 @@ fn case(c: &CaseOutcome, r: &CaseResult, graph: usize) -> Value {
     };
     let mut values: Vec<Value> = Vec::new();
     let mut known: HashMap<String, usize> = HashMap::new();
-    let mut number = |row: &Row| {
-        let v = value(row);
+    let mut number = |row: &Row, spectrum: &[(f64, f64)]| {
+        let v = value(row, spectrum);
         *known.entry(v.to_string()).or_insert_with(|| {
             values.push(v);
             values.len() - 1
@@ -79,8 +79,8 @@ fn case(c: &CaseOutcome, r: &CaseResult, graph: usize) -> Value {
     };
     let mut by_length: BTreeMap<u64, Vec<(u64, usize)>> = BTreeMap::new();
     let mut others = Vec::new();
-    for row in &r.regions {
-        let v = number(row);
+    for (row, answer) in r.regions.iter().zip(c.answers.iter().flatten()) {
+        let v = number(row, &answer.spectrum);
         match row.start {
             Some(start) => by_length.entry(row.sites).or_default().push((start, v)),
             None => others.push(json!([row.region, kind(row.kind), row.name, v])),
@@ -120,13 +120,17 @@ fn case(c: &CaseOutcome, r: &CaseResult, graph: usize) -> Value {
             .map(|l| json!([l.length, l.mean_nats, l.least_nats, l.largest_nats, l.mean_cut_nats]))
             .collect::<Vec<_>>(),
         "fit": r.fit,
+        "findings": findings(r),
         "values": values,
         "intervals": intervals,
         "others": others,
     })
 }
 
-fn value(row: &Row) -> Value {
+/// Levels of a spectrum that the page carries.
+const LEVELS: usize = 16;
+
+fn value(row: &Row, spectrum: &[(f64, f64)]) -> Value {
     let evidence = Evidence::ALL.iter().position(|&e| e == row.evidence);
     json!([
         row.cut_legs,
@@ -139,7 +143,19 @@ fn value(row: &Row) -> Value {
         row.core_tensors,
         row.log10_multiply_adds.map(|x| (x * 100.0).round() / 100.0),
         row.how,
+        (!spectrum.is_empty()).then(|| &spectrum[..spectrum.len().min(LEVELS)]),
     ])
+}
+
+/// The findings as in `result.json`, plans left out.
+fn findings(r: &CaseResult) -> Value {
+    let mut list = json!(r.findings);
+    for f in list.as_array_mut().into_iter().flatten() {
+        if let Some(object) = f.as_object_mut() {
+            object.remove("plan");
+        }
+    }
+    list
 }
 
 fn kind(kind: Kind) -> usize {

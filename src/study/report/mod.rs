@@ -11,12 +11,13 @@ use super::{Outcome, Provenance, StudyResult};
 
 const FRAME: &str = include_str!("page.html");
 const STYLE: &str = include_str!("page.css");
-const PROGRAM: [&str; 6] = [
+const PROGRAM: [&str; 7] = [
     include_str!("js/data.js"),
     include_str!("js/network.js"),
     include_str!("js/disk.js"),
     include_str!("js/charts.js"),
     include_str!("js/tables.js"),
+    include_str!("js/findings.js"),
     include_str!("js/page.js"),
 ];
 
@@ -32,7 +33,7 @@ pub fn page(result: &StudyResult, outcome: &Outcome, provenance: &Provenance) ->
     for (mark, text) in [
         ("{{title}}", escape(&result.name)),
         ("{{style}}", STYLE.to_owned()),
-        ("{{summary}}", super::report::data::sentences(result)),
+        ("{{summary}}", data::sentences(result)),
         ("{{data}}", data),
         ("{{program}}", program),
     ] {

@@ -101,7 +101,7 @@ class Case {
     const v = this.values[at];
     return {
       cutLegs: v[0], cut: this.inUnits(v[1]), entropy: this.inUnits(v[2]), lower: this.inUnits(v[3]),
-      upper: this.inUnits(v[4]), evidence: v[5], error: this.inUnits(v[6]), core: v[7], price: v[8], how: v[9],
+      upper: this.inUnits(v[4]), evidence: v[5], error: this.inUnits(v[6]), core: v[7], price: v[8], how: v[9], spectrum: v[10],
     };
   }
 }

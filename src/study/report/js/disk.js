@@ -109,13 +109,19 @@ class Disk {
     if (this.case.graphData.tiling) for (const z of geodesic(a, b)) g.lineTo(...this.at2(z));
     else g.lineTo(...this.at2(b));
   }
-  hatch(g) {
-    const s = document.createElement("canvas"), k = Math.max(6, this.canvas.width / 110);
+  /** Fills that tell region and complement apart without colour: strokes and dots. */
+  pattern(g, kind) {
+    const k = Math.max(7, Math.round(this.canvas.width / 90)), s = document.createElement("canvas");
     s.width = s.height = k;
     const h = s.getContext("2d");
-    h.fillStyle = css("--core-fill"); h.fillRect(0, 0, k, k);
-    h.strokeStyle = css("--core-line"); h.lineWidth = Math.max(1, k / 7);
-    h.beginPath(); h.moveTo(-1, k + 1); h.lineTo(k + 1, -1); h.moveTo(-1, 1); h.lineTo(1, -1); h.moveTo(k - 1, k + 1); h.lineTo(k + 1, k - 1); h.stroke();
+    h.fillStyle = css(kind === "region" ? "--region-fill" : "--rest-fill"); h.fillRect(0, 0, k, k);
+    if (kind === "region") {
+      h.strokeStyle = css("--region"); h.globalAlpha = 0.28; h.lineWidth = Math.max(1, k / 9);
+      h.beginPath(); h.moveTo(-1, k + 1); h.lineTo(k + 1, -1); h.moveTo(-1, 1); h.lineTo(1, -1); h.moveTo(k - 1, k + 1); h.lineTo(k + 1, k - 1); h.stroke();
+    } else {
+      h.fillStyle = css("--rest"); h.globalAlpha = 0.45;
+      h.beginPath(); h.arc(k / 2, k / 2, Math.max(0.8, k / 11), 0, 7); h.fill();
+    }
     return g.createPattern(s, "repeat");
   }
   background() {
@@ -164,18 +170,18 @@ class Disk {
     g.clearRect(0, 0, size, size);
     g.drawImage(this.under, 0, 0);
     g.lineJoin = g.lineCap = "round";
-    const hatch = this.hatch(g), blue = css("--region-fill");
+    const blue = this.pattern(g, "region"), ochre = this.pattern(g, "rest"), paper = css("--sheet");
     if (this.tiles) {
       g.strokeStyle = css("--hair"); g.lineWidth = Math.max(0.5, px);
       this.tiles.forEach((tile, t) => {
-        if (!tile || side[t] === 2 || tile.size * this.radius < 0.8) return;
+        if (!tile || tile.size * this.radius < 0.8) return;
         this.outline(g, tile);
-        g.fillStyle = side[t] === 1 ? blue : hatch;
+        g.fillStyle = side[t] === 1 ? blue : side[t] === 2 ? ochre : paper;
         g.fill(); g.stroke();
       });
     }
     const dense = this.at.length > 400;
-    if (this.tiles) this.margin(g, blue);
+    if (this.tiles) { this.margin(g, blue, 1); this.margin(g, ochre, 0); }
     this.ribs(g);
     // Legs to the rim.
     const n = this.case.n, few = n <= 400;
@@ -198,9 +204,9 @@ class Disk {
       const r = Math.max(2.5, Math.min(9, 60 / Math.sqrt(this.at.length))) * px;
       this.at.forEach((p, t) => {
         g.beginPath(); g.arc(...this.at2(p), r * (this.tiles ? Math.max(0.45, 1 - 0.6 * Math.hypot(...p)) * 1.25 : 1), 0, 2 * Math.PI);
-        g.fillStyle = side[t] === 1 ? css("--region") : side[t] === 0 ? hatch : css("--sheet");
+        g.fillStyle = css(side[t] === 1 ? "--region" : side[t] === 2 ? "--rest" : "--sheet");
         g.fill();
-        g.strokeStyle = side[t] === 1 ? css("--sheet") : side[t] === 0 ? css("--core-line") : css("--boss");
+        g.strokeStyle = css(side[t] === 0 ? "--ink" : "--sheet");
         g.lineWidth = 1.5 * px; g.stroke();
       });
     }
@@ -217,12 +223,12 @@ class Disk {
     const k = this.net.legs[t].indexOf(l);
     return tile && k < tile.all.length ? [tile.all[k], tile.all[(k + 1) % tile.all.length]] : null;
   }
-  /** The strip between the tiles and the rim, where it belongs to the region. */
-  margin(g, fill) {
+  /** The strip between the tiles and the rim, where it belongs to the region (1) or the rest (0). */
+  margin(g, fill, of) {
     const n = this.case.n;
     g.beginPath();
     for (let s = 0; s < n; s++) {
-      const ends = this.flags[s] && this.side(s);
+      const ends = (this.flags[s] ? 1 : 0) === of && this.side(s);
       if (!ends) continue;
       const m = this.canvas.width / 2, from = this.between((s + n - 1) % n), to = this.between(s);
       g.moveTo(...this.at2(ends[0]));

@@ -16,6 +16,8 @@ const chart = new LengthChart(el("length-chart"), (length) => {
 });
 gapChart(el("gap-chart"));
 evidenceChart(el("evidence-chart"));
+codeSection();
+orderSection();
 evidenceTable();
 blockTable();
 provenance();
@@ -86,6 +88,7 @@ function update() {
   disk.closure.side.forEach((s) => { counts[s]++; });
   el("wedge").textContent = `${counts[1]} tensors from the region, ${counts[2]} from the complement, ${counts[0]} in the core`;
   el("why").textContent = a ? evidenceSays(c, a) : "This study did not ask about this region. The cut found here bounds its entropy from above.";
+  showSpectrum(a);
   const body = el("across").tBodies[0];
   body.textContent = "";
   CASES.forEach((o) => {
