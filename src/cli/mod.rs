@@ -11,12 +11,14 @@ mod contract;
 mod draw;
 mod entropy;
 mod grow;
+mod help;
+mod manners;
 mod order;
 mod show;
 mod study;
 
 use clap::error::ErrorKind;
-use clap::{Parser, Subcommand};
+use clap::{CommandFactory, Parser, Subcommand};
 pub use common::{Common, Failure, Verdict};
 use common::{CommonArgs, STOP};
 use std::io::Write;
@@ -26,7 +28,13 @@ use std::sync::atomic::Ordering;
 /// Perfect tensors at work: blocks with proofs, networks, entropies with evidence,
 /// contraction orders and their execution.
 #[derive(Debug, Parser)]
-#[command(name = "lierne", version, propagate_version = true, arg_required_else_help = true)]
+#[command(
+    name = "lierne",
+    version,
+    propagate_version = true,
+    arg_required_else_help = true,
+    disable_help_subcommand = true
+)]
 struct Program {
     #[command(flatten)]
     common: CommonArgs,
@@ -54,6 +62,11 @@ enum Command {
     Contract(contract::Args),
     /// The network as a code: isometry, recovery, distance, erasures, operators
     Code(code::Args),
+    /// Help on a command, or a page on a topic: conventions, study-file
+    Help(help::Args),
+    /// Write shell completions and man pages
+    #[command(hide = true)]
+    Manners(manners::Args),
 }
 
 /// Runs the program on the process's arguments.
@@ -95,6 +108,8 @@ pub fn main() -> ExitCode {
         Command::Order(a) => order::run(a, &common),
         Command::Contract(a) => contract::run(a, &common),
         Command::Code(a) => code::run(a, &common),
+        Command::Help(a) => help::run(a, Program::command(), &common),
+        Command::Manners(a) => manners::run(a, Program::command(), &common),
     };
     common.clear();
     match outcome {

@@ -199,7 +199,14 @@ fn apply(setting: &Setting, table: &mut Table) {
             recipe.insert("block".into(), Value::String(b.clone()));
         }
         if let Some(c) = &setting.construction {
-            recipe.insert("construction".into(), Value::String(c.clone()));
+            // A block with settings is a table: { family = …, construction = … }.
+            let mut block = match recipe.get("block") {
+                Some(Value::Table(t)) => t.clone(),
+                Some(family) => Table::from_iter([("family".to_owned(), family.clone())]),
+                None => Table::from_iter([("family".to_owned(), Value::from("perfect"))]),
+            };
+            block.insert("construction".into(), Value::String(c.clone()));
+            recipe.insert("block".into(), Value::Table(block));
         }
     }
 }

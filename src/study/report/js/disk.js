@@ -210,6 +210,15 @@ class Disk {
         g.lineWidth = 1.5 * px; g.stroke();
       });
     }
+    if (!dense) {
+      // A bulk leg: a small square inside its tensor's boss.
+      const b = Math.max(1.6, Math.min(4, 26 / Math.sqrt(this.at.length))) * px;
+      for (const l of this.case.graphData.bulk) for (const t of net.holders[l]) {
+        const [x, y] = this.at2(this.at[t]);
+        g.fillStyle = css("--sheet"); g.fillRect(x - b, y - b, 2 * b, 2 * b);
+        g.strokeStyle = css("--ink"); g.lineWidth = px; g.strokeRect(x - b, y - b, 2 * b, 2 * b);
+      }
+    }
     this.sites(g, px, n);
   }
   /** The angle between site s and the next. */

@@ -128,4 +128,5 @@ el("disk").addEventListener("keydown", (event) => {
 limits();
 state.flags = first(state.c);
 update();
+window.lierneCut = () => (typeof state.c.dims === "number" ? disk.cut.size : undefined);
 document.documentElement.dataset.ready = "1";
