@@ -26,6 +26,7 @@ pub mod code;
 pub mod contract;
 pub mod entropy;
 pub mod field;
+pub mod guide;
 pub mod linalg;
 pub mod network;
 pub mod order;

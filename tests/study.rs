@@ -384,3 +384,113 @@ fn every_study_that_ships_runs() {
         assert!(began.elapsed() < Duration::from_secs(600), "{}", study.display());
     }
 }
+
+/// The commands of the README, as written: lines of its `sh` blocks that call the program.
+/// What builds, tests or benchmarks is left to whoever runs this.
+#[test]
+#[ignore = "runs every command of the README"]
+fn the_readme_does_what_it_says() {
+    let root = Path::new(env!("CARGO_MANIFEST_DIR"));
+    let readme = fs::read_to_string(root.join("README.md")).unwrap();
+    let dir = tempfile::tempdir().unwrap();
+    copy(&root.join("networks"), &dir.path().join("networks"));
+    let mut in_shell = false;
+    let mut whole = String::new();
+    let mut commands = Vec::new();
+    for line in readme.lines() {
+        if let Some(language) = line.strip_prefix("```") {
+            in_shell = !in_shell && (language == "sh" || language == "console");
+            continue;
+        }
+        if !in_shell {
+            continue;
+        }
+        let line = line.strip_prefix("$ ").unwrap_or(line);
+        if let Some(first) = line.strip_suffix('\\') {
+            whole.push_str(first);
+            continue;
+        }
+        whole.push_str(line);
+        let command = std::mem::take(&mut whole);
+        let bare = command.replace("cargo run --release -- ", "lierne ");
+        if bare.trim_start().starts_with("lierne ") {
+            commands.push(bare);
+        }
+    }
+    assert!(commands.iter().any(|c| c.contains("six-level-squares.toml")), "{commands:?}");
+    let bin = Path::new(env!("CARGO_BIN_EXE_lierne")).parent().unwrap();
+    let path = format!("{}:{}", bin.display(), std::env::var("PATH").unwrap_or_default());
+    for command in commands {
+        let out = Command::new("sh")
+            .args(["-c", &command])
+            .env("PATH", &path)
+            .current_dir(dir.path())
+            .output()
+            .unwrap();
+        // 1 is a clear negative answer, which a README may well show.
+        let code = out.status.code();
+        assert!(
+            code == Some(0) || code == Some(1),
+            "{command}\nstdout: {}\nstderr: {}",
+            text(&out.stdout),
+            text(&out.stderr)
+        );
+    }
+}
+
+fn copy(from: &Path, to: &Path) {
+    fs::create_dir_all(to).unwrap();
+    for entry in fs::read_dir(from).unwrap().flatten() {
+        let target = to.join(entry.file_name());
+        if entry.path().is_dir() {
+            copy(&entry.path(), &target);
+        } else {
+            fs::copy(entry.path(), target).unwrap();
+        }
+    }
+}
+
+#[test]
+fn help_has_pages_and_names_the_nearest() {
+    let dir = tempfile::tempdir().unwrap();
+    let out = good(&["help", "conventions"], dir.path());
+    for word in ["0..3,7..9", "nats", "NO_COLOR", "Exit 1"] {
+        assert!(text(&out.stdout).contains(word), "{word}");
+    }
+    good(&["help", "study-file"], dir.path());
+    let out = good(&["help", "study"], dir.path());
+    assert!(text(&out.stdout).contains("Examples"), "{}", text(&out.stdout));
+    let out = lierne(&["help", "convention"], dir.path());
+    assert_eq!(out.status.code(), Some(2));
+    assert!(text(&out.stderr).contains("conventions"), "{}", text(&out.stderr));
+}
+
+#[test]
+fn completions_and_man_pages_cover_every_command() {
+    let dir = tempfile::tempdir().unwrap();
+    good(&["manners", "--out", "m"], dir.path());
+    let bash = fs::read_to_string(dir.path().join("m/completions/lierne.bash")).unwrap();
+    for command in
+        ["study", "block", "grow", "show", "draw", "entropy", "order", "contract", "code"]
+    {
+        assert!(bash.contains(command), "{command}");
+        assert!(dir.path().join(format!("m/man/lierne-{command}.1")).exists(), "{command}");
+    }
+}
+
+#[test]
+fn a_closed_pipe_is_quiet() {
+    let dir = tempfile::tempdir().unwrap();
+    let mut child = Command::new(env!("CARGO_BIN_EXE_lierne"))
+        .args(["help", "conventions"])
+        .current_dir(dir.path())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    drop(child.stdout.take());
+    let out = child.wait_with_output().unwrap();
+    assert!(out.stderr.is_empty(), "{}", text(&out.stderr));
+    assert_ne!(out.status.code(), Some(2));
+    assert_ne!(out.status.code(), Some(101));
+}

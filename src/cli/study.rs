@@ -84,7 +84,7 @@ fn answer(
     let began = common.seconds();
     let mut provenance = Provenance {
         version: env!("CARGO_PKG_VERSION").into(),
-        revision: option_env!("LIERNE_REVISION").map(str::to_owned),
+        revision: revision(),
         command: command(),
         study_file: file.place.clone(),
         study_sha256: Sha256::digest(file.text.as_bytes())
@@ -285,6 +285,30 @@ fn command() -> String {
         if plain { a } else { format!("'{}'", a.replace('\'', "'\\''")) }
     }));
     words.join(" ")
+}
+
+/// The git revision of the source that the program was built from: the one that the build
+/// was told, or, for a program that still lies in its source folder, the one checked out.
+fn revision() -> Option<String> {
+    if let Some(told) = option_env!("LIERNE_REVISION") {
+        return Some(told.to_owned());
+    }
+    let source = Path::new(env!("CARGO_MANIFEST_DIR"));
+    std::env::current_exe().ok()?.strip_prefix(source).ok()?;
+    let git = source.join(".git");
+    let head = std::fs::read_to_string(git.join("HEAD")).ok()?;
+    match head.trim().strip_prefix("ref: ") {
+        None => Some(head.trim().to_owned()),
+        Some(name) => {
+            let loose = std::fs::read_to_string(git.join(name)).ok();
+            let packed = || {
+                let list = std::fs::read_to_string(git.join("packed-refs")).ok()?;
+                let line = list.lines().find(|l| l.ends_with(name))?.to_owned();
+                line.split(' ').next().map(str::to_owned)
+            };
+            loose.or_else(packed).map(|r| r.trim().to_owned())
+        }
+    }
 }
 
 fn machine() -> String {

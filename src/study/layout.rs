@@ -1,6 +1,7 @@
 //! Where the tensors and boundary sites of a network stand in the report's disk.
 
-use crate::network::Network;
+use crate::network::{self, Network};
+use crate::tiling::Curvature;
 use std::f64::consts::TAU;
 
 /// Places in the unit disk.
@@ -17,33 +18,54 @@ pub struct Placed {
 /// Rounds of averaging for a network that brings no places.
 const ROUNDS: usize = 400;
 
-/// Places the network. Its own places are used where it has them (scaled into the disk
-/// unless they are those of a hyperbolic tiling); otherwise the boundary sites are set round
-/// the circle and every tensor at the mean of its neighbours, which draws a planar network
-/// without crossings (Proc. London Math. Soc. 13, 743 (1963)).
+/// Places the network.
+///
+/// A hyperbolic patch in one piece, all of whose sites lie on its outer boundary, stands as it
+/// lies in the disk; places that the network brings otherwise are scaled into the disk. For
+/// everything else the boundary sites are set round the circle and every tensor at the mean of
+/// its neighbours, which draws a planar network without crossings (Proc. London Math. Soc. 13,
+/// 743 (1963)).
 pub fn place(network: &Network) -> Placed {
     let n = network.boundary().len();
-    let own = network.layout().filter(|l| l.place.len() == network.tensors());
+    let layout = network.layout();
+    let one_rim = layout.is_none_or(|l| l.sheet.is_empty() && l.cycles.len() < 2);
+    if let Some((tiling, frames)) = network::tile_frames(network).filter(|_| one_rim)
+        && tiling.curvature() == Curvature::Hyperbolic
+    {
+        let known: Vec<Option<[f64; 2]>> =
+            frames.iter().map(|f| f.as_ref().map(|f| f.place())).collect();
+        // States that fix bulk legs stand on the tile that they fix.
+        let tensors: Vec<[f64; 2]> = network
+            .tensor_ids()
+            .map(|t| {
+                known[t.index()].unwrap_or_else(|| {
+                    network
+                        .legs(t)
+                        .iter()
+                        .flat_map(|&l| network.holders(l))
+                        .find_map(|h| known[h.index()])
+                        .unwrap_or([0.0, 0.0])
+                })
+            })
+            .collect();
+        let angles = angles(network, &tensors);
+        return Placed { tensors, angles, tiling: Some((tiling.polygon(), tiling.around())) };
+    }
+    let own = layout.filter(|l| one_rim && l.place.len() == network.tensors());
     let Some(own) = own else {
         let angles: Vec<f64> = (0..n).map(|s| TAU * (s as f64 + 0.5) / n as f64).collect();
         return Placed { tensors: average(network, &angles), angles, tiling: None };
     };
-    let hyperbolic = own.tiling.filter(|&(p, q)| {
-        let (p, q) = (u64::from(p), u64::from(q));
-        p > 2 && q > 2 && (p - 2) * (q - 2) > 4
-    });
     let mut tensors = own.place.clone();
-    if hyperbolic.is_none() {
-        let k = tensors.len().max(1) as f64;
-        let centre = tensors.iter().fold([0.0, 0.0], |c, p| [c[0] + p[0] / k, c[1] + p[1] / k]);
-        let reach =
-            tensors.iter().map(|p| (p[0] - centre[0]).hypot(p[1] - centre[1])).fold(1e-9, f64::max);
-        for p in &mut tensors {
-            *p = [(p[0] - centre[0]) / reach * 0.85, (p[1] - centre[1]) / reach * 0.85];
-        }
+    let k = tensors.len().max(1) as f64;
+    let centre = tensors.iter().fold([0.0, 0.0], |c, p| [c[0] + p[0] / k, c[1] + p[1] / k]);
+    let reach =
+        tensors.iter().map(|p| (p[0] - centre[0]).hypot(p[1] - centre[1])).fold(1e-9, f64::max);
+    for p in &mut tensors {
+        *p = [(p[0] - centre[0]) / reach * 0.85, (p[1] - centre[1]) / reach * 0.85];
     }
     let angles = angles(network, &tensors);
-    Placed { tensors, angles, tiling: hyperbolic }
+    Placed { tensors, angles, tiling: None }
 }
 
 /// Angles that rise with the site: half way between an even spacing and the directions in

@@ -9,7 +9,10 @@ use serde::{Deserialize, Serialize};
 use std::collections::BTreeSet;
 
 /// Most boundary sites for which every subset is asked.
-pub const MOST_SUBSET_SITES: usize = 20;
+pub const MOST_SUBSET_SITES: usize = 18;
+
+/// Most regions of one case: every answer stands in the tables and the page.
+pub const MOST_REGIONS: u64 = 500_000;
 
 /// Why a region is asked about.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Serialize, Deserialize)]
@@ -64,11 +67,20 @@ pub fn all(
     let n = network.boundary().len();
     let wrong = |message: String| StudyError::Region { case: case.to_owned(), message };
     let mut out = Vec::new();
-    for length in lengths(&entropies.intervals, n).map_err(&wrong)? {
-        let every = match entropies.intervals {
-            Intervals::Some { every, .. } => every as usize,
-            Intervals::Word(_) => 1,
-        };
+    let every = match entropies.intervals {
+        Intervals::Some { every, .. } => every as usize,
+        Intervals::Word(_) => 1,
+    };
+    let lengths = lengths(&entropies.intervals, n).map_err(&wrong)?;
+    let starts = n.div_ceil(every) as u64;
+    let drawn = entropies.union.iter().fold(0u64, |s, u| s.saturating_add(u.count));
+    let total = (lengths.len() as u64).saturating_mul(starts).saturating_add(drawn);
+    if total > MOST_REGIONS {
+        return Err(wrong(format!(
+            "{total} regions are asked about; at most {MOST_REGIONS}: give intervals = {{ lengths = .., every = .. }}"
+        )));
+    }
+    for length in lengths {
         for start in (0..n).step_by(every) {
             out.push(Asked {
                 kind: Kind::Interval,

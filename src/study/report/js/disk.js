@@ -71,6 +71,8 @@ class Disk {
     const c = Math.cos(Math.PI / p + Math.PI / q) / Math.cos(Math.PI / p - Math.PI / q);
     const reach = Math.sqrt(Math.max(c, 0));
     return g.legs.map((legs, t) => {
+      // States that fix bulk legs are no tiles.
+      if (legs.length < p) return null;
       const here = this.at[t];
       let side = -1, to = null;
       legs.slice(0, p).some((l, k) => {
@@ -238,7 +240,7 @@ class Disk {
     g.beginPath();
     for (let s = 0; s < n; s++) {
       const ends = (this.flags[s] ? 1 : 0) === of && this.side(s);
-      if (!ends) continue;
+      if (!ends || Math.hypot(ends[0][0] - ends[1][0], ends[0][1] - ends[1][1]) * this.radius < 0.8) continue;
       const m = this.canvas.width / 2, from = this.between((s + n - 1) % n), to = this.between(s);
       g.moveTo(...this.at2(ends[0]));
       for (const z of geodesic(ends[0], ends[1])) g.lineTo(...this.at2(z));

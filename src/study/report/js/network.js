@@ -8,6 +8,7 @@ class Net {
     this.boundary = g.boundary;
     this.holders = Array.from({ length: g.labels }, () => []);
     g.legs.forEach((legs, t) => legs.forEach((l) => this.holders[l].push(t)));
+    this.ends = this.holders.map((h) => new Set(h).size);
     this.dims = c.dims;
     this.siteOf = new Int32Array(g.labels).fill(-1);
     g.boundary.forEach((l, s) => { this.siteOf[l] = s; });
@@ -135,7 +136,7 @@ class Net {
   sweep(flags, side, taken, mark) {
     const known = new Uint8Array(this.holders.length), queue = [];
     const learn = (l) => {
-      if (known[l] || new Set(this.holders[l]).size > 2) return;
+      if (known[l] || this.ends[l] > 2) return;
       known[l] = 1;
       for (const t of this.holders[l]) if (!taken[t]) queue.push(t);
     };
