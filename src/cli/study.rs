@@ -24,7 +24,7 @@ use std::time::{SystemTime, UNIX_EPOCH};
 
 A study that was stopped goes on from where it was when the same command is given again.
 Entropies are in nats and, where all boundary legs share one dimension D, in legs (log D).
-Keys of a study file: lierne help conventions.")]
+Keys of a study file: lierne help study-file.")]
 pub struct Args {
     /// The study file (TOML)
     #[arg(value_name = "FILE", required_unless_present = "new")]
