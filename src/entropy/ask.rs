@@ -1,7 +1,7 @@
 //! Regions to answers.
 
 use super::Spectrum;
-use super::answer::{Answer, EntropyError, Evidence, Part, Request};
+use super::answer::{Answer, EntropyError, Evidence, Part, Request, Unsolved};
 use super::closure::{Closure, Turn, close};
 use super::cut::{Cut, Cutter};
 use super::solve::solve;
@@ -118,6 +118,14 @@ impl<'w, 'n> Asker<'w, 'n> {
     fn known(&self, key: &[u32]) -> Option<Arc<Part>> {
         self.solved.lock().unwrap_or_else(std::sync::PoisonError::into_inner).get(key).cloned()
     }
+    /// Whether a piece is to be solved: it never was, or only time was short then and is not now.
+    fn open(&self, key: &[u32], watch: &dyn Watch) -> bool {
+        self.known(key).is_none_or(|part| {
+            part.reason == Some(Unsolved::Time)
+                && !watch.stop()
+                && watch.seconds() <= self.request.seconds
+        })
+    }
     /// The entropy of one region.
     ///
     /// # Errors
@@ -135,9 +143,8 @@ impl<'w, 'n> Asker<'w, 'n> {
         key: &[u32],
         watch: &dyn Watch,
     ) -> Result<(), EntropyError> {
-        if self.known(key).is_none() {
+        if self.open(key, watch) {
             let part = solve(&core.cut_out(self.wires)?, &self.request, watch)?;
-            // A part that time left unsolved is asked again next time.
             self.solved
                 .lock()
                 .unwrap_or_else(std::sync::PoisonError::into_inner)
@@ -168,7 +175,7 @@ impl<'w, 'n> Asker<'w, 'n> {
         let mut seen: HashMap<&[u32], ()> = HashMap::new();
         for (r, j) in judged.iter().enumerate() {
             for (c, key) in j.keys.iter().enumerate() {
-                if seen.insert(key, ()).is_none() && self.known(key).is_none() {
+                if seen.insert(key, ()).is_none() && self.open(key, watch) {
                     let core = &j.split.cores[c];
                     open.push((core.region.len() + core.complement.len(), r, c));
                 }

@@ -124,3 +124,27 @@ pub(super) fn conjugate(block: &Arc<Block>) -> Arc<Block> {
         },
     ))
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::entropy::contraction::by_contraction;
+    use crate::entropy::solve::Solved;
+    use crate::entropy::testing::ring;
+    use crate::watch::Silent;
+
+    #[test]
+    fn four_copies_give_the_second_renyi_entropy_of_the_spectrum() {
+        let request = Request::default();
+        for (n, dim) in [(2, 3), (3, 3), (3, 6), (4, 3)] {
+            let piece = ring(n, dim);
+            let Solved::Values(spectrum, ..) =
+                by_contraction(&piece, &request, &Silent).expect("it runs")
+            else {
+                panic!("a ring of {n} fits the budget")
+            };
+            let copies = renyi2(&piece, &request, &Silent).expect("it runs").expect("it fits");
+            assert!((copies - spectrum.renyi(2.0)).abs() < 1e-10, "{n}, {dim}: {copies}");
+        }
+    }
+}

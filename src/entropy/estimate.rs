@@ -224,3 +224,30 @@ impl Operator {
         Ok((nodes, weights))
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::entropy::contraction::by_contraction;
+    use crate::entropy::solve::Solved;
+    use crate::entropy::testing::ring;
+    use crate::watch::Silent;
+
+    #[test]
+    fn the_estimate_lies_within_four_of_its_errors() {
+        for (n, dim) in [(2, 6), (3, 6), (3, 3)] {
+            let piece = ring(n, dim);
+            let request = Request::default();
+            let Solved::Values(spectrum, ..) =
+                by_contraction(&piece, &request, &Silent).expect("it runs")
+            else {
+                panic!("a ring of {n} fits the budget")
+            };
+            let exact = spectrum.entropy();
+            let (s, error) =
+                estimate(&piece, &request, &Silent).expect("it runs").expect("it fits");
+            assert!((s - exact).abs() < 4.0 * error + 1e-9, "{n}, {dim}: {s} ± {error}, {exact}");
+            assert!(error < 0.3, "{n}, {dim}: an error of {error} says nothing");
+        }
+    }
+}

@@ -7,8 +7,15 @@
 //!
 //! 1. [`cut`]: the minimal cut, always an upper bound;
 //! 2. [`closure`]: isometries absorbed from both sides; what is left is the core ([`Split`]);
-//! 3. contraction of each distinct piece of the core and its singular values;
-//! 4. proven bounds, with the price of the exact answer, where that does not fit.
+//! 3. [`stabilizer`]: ranks over prime fields, where all tensors of a piece are stabilizer
+//!    states;
+//! 4. contraction of each distinct piece of the core and its singular values, block by block;
+//! 5. on request an estimate from random vectors;
+//! 6. proven [`bounds`], with the price of the exact answer, where nothing else fits.
+//!
+//! All intervals of a boundary at once: [`Intervals`], [`intervals::closed_from`]. Derived
+//! measures: [`measure`]. Records that can be checked without trust: [`Certificate`].
+//! Averages over positions and their logarithmic law: [`fit`].
 
 mod answer;
 mod ask;
@@ -30,6 +37,8 @@ mod sectors;
 mod solve;
 mod spectrum;
 pub mod stabilizer;
+#[cfg(test)]
+mod testing;
 mod the_core;
 mod wires;
 
