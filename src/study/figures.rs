@@ -12,7 +12,7 @@ use crate::entropy::{Asker, Node, Request, Wires};
 use crate::network::Region;
 
 /// Width in pixels of the PNG twins: one journal column at 600 dots an inch.
-#[cfg(any())]
+#[cfg(feature = "png")]
 const PIXELS: u32 = 2008;
 /// Tensors beyond which no picture of the network is put into the folder.
 const MOST_TENSORS: usize = 50_000;
@@ -32,7 +32,7 @@ pub fn write(
         match svg {
             Ok(svg) => {
                 folder.write(&format!("figures/{name}.svg"), svg.as_bytes())?;
-                #[cfg(any())]
+                #[cfg(feature = "png")]
                 match super::picture::png(&svg, PIXELS) {
                     Ok(bytes) => folder.write(&format!("figures/{name}.png"), &bytes)?,
                     Err(e) => left_out.push(format!("{name}.png: {e}")),

@@ -34,8 +34,8 @@ pub fn fit(points: &[(f64, f64)], n: usize) -> Option<Fit> {
     let mean_y = xy.iter().map(|p| p.1).sum::<f64>() / m;
     let sxx: f64 = xy.iter().map(|p| (p.0 - mean_x).powi(2)).sum();
     let sxy: f64 = xy.iter().map(|p| (p.0 - mean_x) * (p.1 - mean_y)).sum();
-    // NaN (a length out of range) fails this test too.
-    if !(sxx > 1e-12) {
+    // NaN comes from a length out of range.
+    if sxx.is_nan() || sxx <= 1e-12 {
         return None;
     }
     let c = sxy / sxx;

@@ -170,10 +170,16 @@ fn case(c: &CaseOutcome) -> CaseResult {
         boundary_dimension: net.boundary_dim().map(|d| d as u64),
         blocks: blocks(c),
         counts: counts(&rows),
-        fit: fit::fit(
-            &by_length.iter().map(|l| (l.length as f64, l.mean_nats)).collect::<Vec<_>>(),
-            n,
-        ),
+        // The law is one of pure states: with open bulk legs there is nothing to fit.
+        fit: net
+            .bulk()
+            .is_empty()
+            .then(|| {
+                let means: Vec<(f64, f64)> =
+                    by_length.iter().map(|l| (l.length as f64, l.mean_nats)).collect();
+                fit::fit(&means, n)
+            })
+            .flatten(),
         by_length,
         regions: rows,
         findings: c.findings.iter().flatten().cloned().collect(),

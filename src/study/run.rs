@@ -23,8 +23,8 @@ pub struct Limits {
 }
 
 impl Limits {
-    /// Multiply-adds a core where the study says nothing: about a minute's work.
-    pub const MULTIPLY_ADDS: f64 = 3e12;
+    /// Multiply-adds a core where the study says nothing: about half a minute of one core.
+    pub const MULTIPLY_ADDS: f64 = 2e11;
 
     /// The study's own, with this memory where it names none.
     ///
@@ -147,7 +147,7 @@ pub fn run(
     outcome.done = outcome.kept;
     let watch = Study { outer: watch, until: limits.seconds };
     let mut told = watch.seconds();
-    for at in 0..outcome.cases.len() {
+    for (at, keys) in keys.iter().enumerate() {
         let c = &outcome.cases[at];
         let mut open: Vec<usize> = (0..c.asked.len()).filter(|&r| c.answers[r].is_none()).collect();
         if open.is_empty() || watch.stop() {
@@ -171,7 +171,7 @@ pub fn run(
                 if a.evidence == Evidence::Bounds {
                     costly.push((a.core_tensors, r));
                 } else {
-                    journal.put(&keys[at][r], &a)?;
+                    journal.put(&keys[r], &a)?;
                     outcome.cases[at].answers[r] = Some(a);
                     outcome.done += 1;
                 }
@@ -192,7 +192,7 @@ pub fn run(
                 // Not the budget of the region but the end of the run left it open.
                 break;
             }
-            journal.put(&keys[at][r], &answer)?;
+            journal.put(&keys[r], &answer)?;
             outcome.cases[at].answers[r] = Some(answer);
             outcome.done += 1;
             watch.count(&outcome);

@@ -20,14 +20,14 @@ function codeSection() {
   const table = el("recovery-table");
   if (rec.length) {
     head(table, ["case", "region", "recoverable", "from the complement", "from neither", "evidence"]);
-    for (const { c, f } of rec) row(table.tBodies[0], [c.case, f.region, few(f.recoverable), few(f.from_complement), few(f.neither.concat(f.undecided.map((u) => `${u}?`))), f.evidence.replace("-", " ")]);
+    for (const { c, f } of rec) row(table.tBodies[0], [c.case, f.region, few(f.recoverable), few(f.from_complement), few(f.neither.concat(f.undecided.map((u) => `${u}?`))), f.evidence.replace("-", " ")]).cells[1].className = "";
   } else table.hidden = true;
   if (era.length) erasureChart(el("erasure-chart"), era);
   else el("erasure-chart").hidden = true;
 }
 
 function erasureChart(figure, list) {
-  const wide = 880, high = 400, box = { left: 56, right: 690, top: 40, bottom: 340 };
+  const wide = 880, high = 400, box = { left: 56, right: 640, top: 40, bottom: 340 };
   const top = Math.max(...list.flatMap(({ f }) => f.points.map((p) => p.p)));
   const x = (p) => box.left + ((box.right - box.left) * p) / top, y = (v) => box.bottom - (box.bottom - box.top) * v;
   const svg = svgNode("svg", { viewBox: `0 0 ${wide} ${high}`, role: "img", "aria-label": "Probability that recovery fails against erasure rate; the values are in erasure.csv" });

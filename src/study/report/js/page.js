@@ -31,6 +31,7 @@ CASES.forEach((c, i) => {
 });
 
 function chooseCase(i) {
+  if (CASES[i].n === 0) return;
   const before = state.c;
   state.c = CASES[i];
   if (before.n !== state.c.n) state.flags = first(state.c);
@@ -125,8 +126,10 @@ el("disk").addEventListener("keydown", (event) => {
   chooseInterval((at[0] + move[0] + n) % n, Math.max(1, Math.min(n - 1, at[1] + move[1])));
 });
 
-limits();
-state.flags = first(state.c);
-update();
+if (state.c.n > 0) {
+  limits();
+  state.flags = first(state.c);
+  update();
+} else el("explore").hidden = true;
 window.lierneCut = () => (typeof state.c.dims === "number" ? disk.cut.size : undefined);
 document.documentElement.dataset.ready = "1";
