@@ -37,7 +37,7 @@ impl Bits {
                 .swap_with_slice(&mut tail[..self.stride]);
         }
     }
-    /// row[dst] += row[src], words from `from` on.
+    /// row\[dst\] += row\[src\], words from `from` on.
     fn add_row(&mut self, dst: usize, src: usize, from: usize) {
         let s = self.stride;
         let (low, high) = (dst.min(src), dst.max(src));

@@ -28,11 +28,11 @@ struct Tables {
     prime: u32,
     degree: u32,
     modulus: Vec<u32>,
-    /// exp[k] = g^k for k < 2(q−1), so that sums of two logarithms need no reduction.
+    /// exp\[k\] = g^k for k < 2(q−1), so that sums of two logarithms need no reduction.
     exp: Vec<u16>,
-    /// log[v] for v ≠ 0; log[0] is unused.
+    /// log\[v\] for v ≠ 0; log\[0\] is unused.
     log: Vec<u16>,
-    /// zech[k] = log(1 + g^k), or `NONE` where 1 + g^k = 0; odd extension fields only.
+    /// zech\[k\] = log(1 + g^k), or `NONE` where 1 + g^k = 0; odd extension fields only.
     zech: Vec<u32>,
     /// sum[a·q + b] = a + b; odd extension fields up to `MOST_SUMMED` elements only.
     sum: Vec<u16>,

@@ -78,7 +78,7 @@ impl Trits {
             pair[1] ^= pair[0];
         }
     }
-    /// row[dst] += c·row[src], words from `from` on.
+    /// row\[dst\] += c·row\[src\], words from `from` on.
     fn add_row(&mut self, dst: usize, src: usize, c: u32, from: usize) {
         let s = self.stride;
         let (low, high) = (dst.min(src), dst.max(src));

@@ -1,7 +1,7 @@
 //! Four legs of six levels, where no two orthogonal Latin squares exist.
 //!
 //! All are diagonal in a basis of maximally entangled pairs with phases that are roots of
-//! unity, and all are proven in Z[z], z = exp(2πi/6).
+//! unity, and all are proven in Z\[z\], z = exp(2πi/6).
 
 use crate::block::exact::{Exact, ExactValues};
 use crate::block::stabilizer_tensor::{first_failure, legs_of};
@@ -17,7 +17,7 @@ const CUBE_ROOTS: [[u32; 6]; 6] = [
     [1, 2, 2, 1, 0, 1],
 ];
 
-/// T[i,j,k,l] = (1/6) Σ_q w^{E[p][q]} z^{q(k−l)} where i−k = j−l = p modulo 6, else 0, with
+/// T\[i,j,k,l\] = (1/6) Σ_q w^{E\[p\]\[q\]} z^{q(k−l)} where i−k = j−l = p modulo 6, else 0, with
 /// z = exp(2πi/6): 180 entries.
 pub(super) fn cube_roots(_: usize) -> Result<Block, BlockError> {
     let mut sums = Sums::new();
@@ -36,7 +36,7 @@ pub(super) fn cube_roots(_: usize) -> Result<Block, BlockError> {
 
 /// U = Σ λ_W |W⟩⟨W| over the products W of Pauli operators X^{a₁}Z^{a₂} of the two-level part
 /// and X^xZ^y of the three-level part (level = 3·first + second), |W⟩ = (W ⊗ 1) Σ|kk⟩/√6,
-/// read as T[i,j,k,l] = ⟨ij|U|kl⟩. With w = exp(2πi/3) and t = 0, 1, 2 for a = 01, 10, 11:
+/// read as T\[i,j,k,l\] = ⟨ij|U|kl⟩. With w = exp(2πi/3) and t = 0, 1, 2 for a = 01, 10, 11:
 /// λ = w^{x²+y²} at a = 00 and w^{t²+x²−y²+ty} elsewhere (found by hand in the spirit of
 /// arXiv:2504.15401; proven here).
 pub(super) fn quadratic(_: usize) -> Result<Block, BlockError> {
