@@ -23,12 +23,39 @@ impl Integers<'_> {
     /// Σ over the labels of `all` that are not in `keep` of the product of the tables.
     fn sum(&self, tables: &[&Table], all: &[Label], keep: &[Label]) -> Table {
         let mut values = ArrayD::zeros(IxDyn(&self.dims(keep)));
-        for index in ndarray::indices(IxDyn(&self.dims(all))) {
-            let at = |labels: &[Label]| -> Vec<usize> {
-                labels.iter().map(|l| index[all.iter().position(|x| x == l).unwrap()]).collect()
-            };
-            values[IxDyn(&at(keep))] +=
-                tables.iter().map(|t| t.values[IxDyn(&at(&t.labels))]).product::<i128>();
+        let sizes = self.dims(all);
+        // How far each table and the result step along each label of `all`.
+        let steps = |labels: &[Label], strides: &[isize]| -> Vec<usize> {
+            // A label that stands twice steps along both of its axes.
+            all.iter()
+                .map(|l| {
+                    let axes = (0..labels.len()).filter(|&i| labels[i] == *l);
+                    axes.map(|i| strides[i] as usize).sum()
+                })
+                .collect()
+        };
+        let out = steps(keep, values.strides());
+        let from: Vec<(Vec<usize>, Vec<i128>)> = tables
+            .iter()
+            .map(|t| {
+                let values = t.values.as_standard_layout().to_owned();
+                (steps(&t.labels, values.strides()), values.into_raw_vec_and_offset().0)
+            })
+            .collect();
+        let flat = values.as_slice_mut().unwrap();
+        let at = |index: &[usize], steps: &[usize]| -> usize {
+            index.iter().zip(steps).map(|(i, s)| i * s).sum()
+        };
+        let mut index = vec![0; all.len()];
+        for _ in 0..sizes.iter().product::<usize>() {
+            flat[at(&index, &out)] += from.iter().map(|(s, v)| v[at(&index, s)]).product::<i128>();
+            for i in (0..all.len()).rev() {
+                index[i] += 1;
+                if index[i] < sizes[i] {
+                    break;
+                }
+                index[i] = 0;
+            }
         }
         Table { labels: keep.to_vec(), values }
     }
