@@ -59,7 +59,7 @@ fn slow_cost(shape: &Shape, plan: &Plan) -> (u128, u128, usize) {
 }
 
 /// The fewest multiply-adds over all orders, by trying every pair again and again.
-fn fewest(shape: &Shape, steps: &mut Vec<(u32, u32)>, alive: &mut Vec<u32>, best: &mut u128) {
+fn fewest(shape: &Shape, steps: &mut Vec<(u32, u32)>, alive: &[u32], best: &mut u128) {
     if alive.len() == 1 {
         let plan = Plan { steps: steps.clone(), sliced: Vec::new() };
         *best = (*best).min(slow_cost(shape, &plan).0);
@@ -71,7 +71,7 @@ fn fewest(shape: &Shape, steps: &mut Vec<(u32, u32)>, alive: &mut Vec<u32>, best
             let mut rest: Vec<u32> = alive.iter().copied().filter(|&t| t != a && t != b).collect();
             rest.push((shape.tensors.len() + steps.len()) as u32);
             steps.push((a, b));
-            fewest(shape, steps, &mut rest, best);
+            fewest(shape, steps, &rest, best);
             steps.pop();
         }
     }
@@ -148,8 +148,8 @@ fn the_exhaustive_method_meets_a_search_of_all_trees() {
     for seed in 0..12 {
         let shape = graphs::random(5 + seed as usize % 2, 4, 5, seed);
         let mut best = u128::MAX;
-        let mut all: Vec<u32> = (0..shape.tensors.len() as u32).collect();
-        fewest(&shape, &mut Vec::new(), &mut all, &mut best);
+        let all: Vec<u32> = (0..shape.tensors.len() as u32).collect();
+        fewest(&shape, &mut Vec::new(), &all, &mut best);
         let found = search(&shape, &request(Method::Exhaustive, 1 << 30, 0), &Silent).unwrap();
         assert_eq!(found.cost.multiply_adds, Some(best), "seed {seed}");
         assert!(found.optimal);
@@ -393,4 +393,73 @@ fn no_plan_is_dearer_than_the_paths_of_numpy() {
             assert!(ours <= optimal, "{}: {ours} against optimal {optimal}", case.name);
         }
     }
+}
+
+/// Runs the program in the repository's folder.
+fn program(words: &[&str]) -> (Option<i32>, String, String) {
+    let out = std::process::Command::new(env!("CARGO_BIN_EXE_lierne"))
+        .args(words)
+        .current_dir(env!("CARGO_MANIFEST_DIR"))
+        .output()
+        .unwrap();
+    let text = |b: Vec<u8>| String::from_utf8_lossy(&b).into_owned();
+    (out.status.code(), text(out.stdout), text(out.stderr))
+}
+
+#[test]
+fn the_program_finds_saves_refines_and_refuses_plans() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("plan.json");
+    let plan = path.to_str().unwrap();
+    let loop5 = "networks/loop-5.toml";
+    let (code, out, err) = program(&["order", loop5, "--seconds", "1", "--json", "--save", plan]);
+    assert_eq!(code, Some(0), "{out}{err}");
+    let value: serde_json::Value = serde_json::from_str(&out).unwrap();
+    for key in [
+        "method",
+        "log10_multiply_adds",
+        "log2_peak_elements",
+        "log2_largest_tensor",
+        "widest_step",
+        "slices",
+        "sliced_labels",
+        "steps",
+    ] {
+        assert!(!value[key].is_null(), "{key}: {out}");
+    }
+    assert_eq!(value["steps"].as_array().unwrap().len(), 4);
+
+    let (code, out, err) = program(&["order", loop5, "--plan", plan, "--slices", "6", "--json"]);
+    assert_eq!(code, Some(0), "{out}{err}");
+    let sliced: serde_json::Value = serde_json::from_str(&out).unwrap();
+    assert!(sliced["slices"].as_u64().unwrap() >= 6, "{out}");
+    assert!(sliced["given"]["widest_step"].as_u64().is_some(), "{out}");
+
+    let refused: [&[&str]; 5] = [
+        &["order", "networks/loop-4.toml", "--plan", plan],
+        &["order", loop5, "--method", "sorcery"],
+        &["order", loop5, "--objective", "mix:-1"],
+        &["order", loop5, "--seconds", "-1"],
+        &["order", loop5, "--memory", "10KiB"],
+    ];
+    for words in refused {
+        let (code, out, err) = program(words);
+        assert_eq!((code, out.as_str()), (Some(2), ""), "{words:?}: {err}");
+        assert!(err.lines().count() >= 1, "{words:?}: {err}");
+    }
+}
+
+#[test]
+fn the_program_compares_methods() {
+    let folder = tempfile::tempdir().unwrap();
+    let out = folder.path().join("orders");
+    let words = ["order", "compare", "networks/loop-4.toml", "networks/bench/torus-8x8.json"];
+    let more = ["--seconds", "0.05", "--seeds", "2", "--out", out.to_str().unwrap()];
+    let (code, said, err) = program(&[&words[..], &more[..]].concat());
+    assert_eq!(code, Some(0), "{said}{err}");
+    let table = std::fs::read_to_string(out.join("orders.csv")).unwrap();
+    assert!(table.lines().count() > 60, "{table}");
+    assert!(table.lines().all(|l| l.split(',').count() == 15), "{table}");
+    let page = std::fs::read_to_string(out.join("orders.html")).unwrap();
+    assert!(page.contains("torus-8x8") && page.matches("<svg").count() >= 5);
 }

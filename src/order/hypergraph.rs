@@ -185,13 +185,13 @@ impl Level {
         }
         let mut gains: Vec<f64> = (0..n).map(|v| self.gain(v, side, &count)).collect();
         let mut heap: BinaryHeap<(Gain, u32)> = BinaryHeap::new();
-        for v in 0..n {
+        for (v, &gain) in gains.iter().enumerate() {
             let cut = self.edges_of[v].iter().any(|&e| {
                 let c = count[e as usize];
                 c[0] > 0 && c[1] > 0
             });
             if cut || n <= 2 * COARSE {
-                heap.push((Gain(gains[v]), v as u32));
+                heap.push((Gain(gain), v as u32));
             }
         }
         let mut locked = vec![false; n];

@@ -145,5 +145,5 @@ fn almost_simplicial(g: &Graph, v: usize) -> bool {
     let d = near.len();
     let missing: Vec<usize> = near.iter().map(|&u| d - 1 - common(g.row(u), g.row(v))).collect();
     let total: usize = missing.iter().sum::<usize>() / 2;
-    missing.iter().any(|&m| m == total)
+    missing.contains(&total)
 }

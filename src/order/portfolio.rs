@@ -123,12 +123,12 @@ pub(crate) fn solve(task: &Task) -> Option<Solved> {
             return None;
         }
     }
-    if wants(Method::Elimination) {
-        if let Some(line) = LineGraph::of(net, LINE) {
-            run.bound = lower::best_treewidth(&line.graph, 5);
-            let kernel = Kernel::of(net, &line, run.bound);
-            run.kernel = LineGraph::of(&kernel.net, LINE).map(|line| (kernel, line));
-        }
+    if wants(Method::Elimination)
+        && let Some(line) = LineGraph::of(net, LINE)
+    {
+        run.bound = lower::best_treewidth(&line.graph, 5);
+        let kernel = Kernel::of(net, &line, run.bound);
+        run.kernel = LineGraph::of(&kernel.net, LINE).map(|line| (kernel, line));
     }
     if task.method != Method::Portfolio {
         // Where the work is too little for eight attempts, fewer are made.
@@ -235,17 +235,25 @@ impl Run<'_> {
         if let Some(steps) = task.start {
             pool.push(self.candidate(Tree::new(net, steps), "given plan"));
         }
-        let mut share = task.work / TASKS as u64;
-        if task.objective == Objective::Balanced {
-            if let Some(tree) = narrow::order(self, share / 2) {
-                pool.push(self.candidate(tree, "elimination and annealing"));
-                share -= share / 2;
-            }
+        if task.work < 16 * 60 * self.legs() {
+            // Too little work for this many tensors to try all methods: what there is goes
+            // into the best so far.
+            let at = (0..pool.len())
+                .min_by(|&a, &b| pool[a].score.total_cmp(&pool[b].score))
+                .unwrap_or(0);
+            let Candidate { mut tree, method, .. } = pool.swap_remove(at);
+            self.polish(&mut tree, self.price, task.work, &mut self.rng(0, 0));
+            return Solved { steps: tree.steps(), method, optimal: false };
         }
-        let made: Vec<Candidate> = (0..TASKS)
-            .into_par_iter()
-            .map(|i| self.from_scratch(&pool, i, share * 2 / 5))
-            .collect();
+        let mut share = task.work / TASKS as u64;
+        if task.objective == Objective::Balanced
+            && let Some(tree) = narrow::order(self, share / 2)
+        {
+            pool.push(self.candidate(tree, "elimination and annealing"));
+            share -= share / 2;
+        }
+        let made: Vec<Candidate> =
+            (0..TASKS).into_par_iter().map(|i| self.first_round(&pool, i, share * 2 / 5)).collect();
         pool.extend(made);
         sift(&mut pool);
         let mut idle = 0;
@@ -257,7 +265,7 @@ impl Run<'_> {
             let before = pool[0].score;
             let made: Vec<Candidate> = (0..TASKS)
                 .into_par_iter()
-                .map(|i| self.from_pool(&pool, round, i, share * 3 / 5 / ROUNDS))
+                .map(|i| self.later_round(&pool, round, i, share * 3 / 5 / ROUNDS))
                 .collect();
             pool.extend(made);
             sift(&mut pool);
@@ -267,7 +275,7 @@ impl Run<'_> {
     }
 
     /// A task of the first round.
-    fn from_scratch(&self, pool: &[Candidate], i: usize, work: u64) -> Candidate {
+    fn first_round(&self, pool: &[Candidate], i: usize, work: u64) -> Candidate {
         let mut rng = self.rng(0, i);
         let half = work / 2;
         let (mut tree, method) = match i {
@@ -291,7 +299,7 @@ impl Run<'_> {
     }
 
     /// A task of a later round: anneals one of the best trees so far.
-    fn from_pool(&self, pool: &[Candidate], round: u64, i: usize, work: u64) -> Candidate {
+    fn later_round(&self, pool: &[Candidate], round: u64, i: usize, work: u64) -> Candidate {
         let (net, watch) = (self.task.net, self.task.watch);
         let mut rng = self.rng(round, i);
         let mut tree = pool[i % pool.len().min(3)].tree.clone();

@@ -276,10 +276,10 @@ fn widest_step_bound(shape: &Shape, net: &Net) -> usize {
     for t in &net.tensors {
         bound = bound.max(t.len());
     }
-    if let Some(line) = LineGraph::of(net, 3000) {
-        if line.graph.n > 0 {
-            bound = bound.max(lower::best_treewidth(&line.graph, 5) + 1);
-        }
+    if let Some(line) = LineGraph::of(net, 3000)
+        && line.graph.n > 0
+    {
+        bound = bound.max(lower::best_treewidth(&line.graph, 5) + 1);
     }
     bound
 }

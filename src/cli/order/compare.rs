@@ -168,7 +168,7 @@ fn frontier(
     let Some(peak) = peak else { return Ok(()) };
     for doublings in FRONTIER {
         let memory = peak - f64::from(doublings);
-        if memory < 1.0 || memory > 62.0 || common.stop() {
+        if !(1.0..=62.0).contains(&memory) || common.stop() {
             continue;
         }
         let m = Method::Portfolio;
