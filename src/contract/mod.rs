@@ -1,6 +1,6 @@
 //! Contraction plans run on an algebra.
 //!
-//! [`run`] takes a network, [`solve`] a bare [`Problem`]. A plan is compiled once (labels of
+//! [`run`] takes a network, [`solve()`] a bare [`Problem`]. A plan is compiled once (labels of
 //! every intermediate, order of their axes, memory) and then run slice by slice on an
 //! [`Algebra`]: dense numbers, real where all blocks are real.
 //!

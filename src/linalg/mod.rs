@@ -2,13 +2,13 @@
 //!
 //! | question | member | cost (m ≥ n) |
 //! |---|---|---|
-//! | A·B, any strides | [`product`], [`product_into`] | m·k·n |
+//! | A·B, any strides | [`product()`], [`product_into`] | m·k·n |
 //! | singular values | [`singular_values`] | about 8/3·m·n² |
 //! | A = U·diag(s)·V† | [`thin_svd`] | about 10·m·n² |
 //! | eigenvalues of A = A† | [`hermitian_eigenvalues`], [`hermitian_eigen`] | about 4/3·n³, 9·n³ |
-//! | nearest isometry | [`polar`] | as [`thin_svd`] |
-//! | A = Q·R | [`qr`] | about 4·m·n² |
-//! | independent blocks of a matrix | [`blocks`] | one pass over the entries |
+//! | nearest isometry | [`polar()`] | as [`thin_svd`] |
+//! | A = Q·R | [`qr()`] | about 4·m·n² |
+//! | independent blocks of a matrix | [`blocks()`] | one pass over the entries |
 //!
 //! Flat, rank-deficient and zero matrices are the normal case here. The backend's default
 //! singular value routine is wrong on some of them: its divide-and-conquer step can report

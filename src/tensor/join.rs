@@ -16,7 +16,7 @@ pub(crate) struct Leg {
 
 const ONE: Leg = Leg { size: 1, left: 0, right: 0, out: 0 };
 
-/// C[b,m,n] = Σ_k A[b,m,k]·B[b,k,n], every group any number of labels, any strides. A group
+/// `C[b,m,n] = Σ_k A[b,m,k]·B[b,k,n]`, every group any number of labels, any strides. A group
 /// holds 0 for the array that lacks its labels. Places of C are distinct.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]
 pub(crate) struct Join {
@@ -306,7 +306,7 @@ impl Loops {
     }
 }
 
-/// c[i] = a[i]·b[i], or added to it.
+/// `c[i] = a[i]·b[i]`, or added to it.
 ///
 /// # Safety
 /// All three reach over `n` entries; `c` is nobody else's.
