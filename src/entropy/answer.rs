@@ -44,7 +44,7 @@ pub struct Request {
     /// Bytes that one core's contraction and decomposition may hold. Default 4 GiB.
     pub memory_bytes: u64,
     /// log10 of the multiply-adds that one core may take, contraction and decomposition
-    /// together. Default 12.
+    /// together. Default 11.3, some ten seconds of work.
     pub log10_multiply_adds: f64,
     /// No core is begun after this many seconds by [`crate::watch::Watch::seconds`]. Default:
     /// no limit. Where it strikes, answers depend on the machine's speed.
@@ -63,7 +63,7 @@ impl Default for Request {
     fn default() -> Self {
         Self {
             memory_bytes: 4 << 30,
-            log10_multiply_adds: 12.0,
+            log10_multiply_adds: 11.3,
             seconds: f64::INFINITY,
             finite_field: true,
             contraction: true,

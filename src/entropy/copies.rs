@@ -10,7 +10,7 @@ use crate::watch::Watch;
 use std::sync::Arc;
 
 /// log10 of the most multiply-adds that are spent on what only improves a bound.
-const MOST_WORK: f64 = 10.0;
+const MOST_WORK: f64 = 9.0;
 
 /// S₂ = −ln(tr ρ² / (tr ρ)²) of a piece, in nats, where its contraction fits the budget.
 ///
@@ -81,7 +81,7 @@ fn value(
             });
         }
     }
-    let order = order::Request { seed: request.seed, work: 2_000_000, ..Default::default() };
+    let order = order::Request { seed: request.seed, work: 200_000, ..Default::default() };
     let found = order::search(&shape, &order, watch)?;
     if found.cost.log10_multiply_adds > request.log10_multiply_adds.min(MOST_WORK)
         || found.cost.log2_peak_elements + 4.0 > (request.memory_bytes as f64).log2()
