@@ -625,7 +625,7 @@ fn deliver(recipe: &Recipe, output: &Output, common: &Common) -> Result<Verdict,
     };
     let text = recipe_text(recipe, &name, output.dimension, format_of(path)?)?;
     write_file(path, text.as_bytes())?;
-    show::tell(&network, common)?;
+    show::tell_grown(&network, common)?;
     Ok(Verdict::Yes)
 }
 
@@ -641,7 +641,7 @@ fn deliver_network(
         }
         Some(path) => {
             save(network, path)?;
-            show::tell(network, common)?;
+            show::tell_grown(network, common)?;
         }
     }
     Ok(Verdict::Yes)

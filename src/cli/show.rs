@@ -19,13 +19,19 @@ pub struct Args {
 /// A sentence on what is wrong with the file.
 pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
     let network = load(&args.network, &Limits::default())?;
-    tell(&network, common)?;
+    tell(Survey::of(&network), common)?;
     Ok(Verdict::Yes)
 }
 
-/// Says what a network consists of.
-pub(super) fn tell(network: &Network, common: &Common) -> Result<(), Failure> {
-    let s = Survey::of(network);
+/// Says what a network that was just written consists of; of a large one not whether it is
+/// planar, which would take longer than to grow it.
+pub(super) fn tell_grown(network: &Network, common: &Common) -> Result<(), Failure> {
+    let large = network.labels() > 200_000;
+    let survey = if large { Survey::without_planarity(network) } else { Survey::of(network) };
+    tell(survey, common)
+}
+
+fn tell(s: Survey, common: &Common) -> Result<(), Failure> {
     if common.json {
         return common.say_json(&s);
     }
@@ -63,12 +69,14 @@ pub(super) fn tell(network: &Network, common: &Common) -> Result<(), Failure> {
     say("bonds a tensor", list(&s.degrees, "with"));
     say("parts", s.components.to_string());
     say("cycles", s.cycles.to_string());
-    let planar = match (s.planar, s.planar_in_a_disk) {
-        (false, _) => "no",
-        (true, false) => "yes, but not with its boundary in this order on the rim of a disk",
-        (true, true) => "yes, with its boundary in this order on the rim of a disk",
-    };
-    say("planar", planar.to_owned());
+    if let (Some(planar), Some(in_a_disk)) = (s.planar, s.planar_in_a_disk) {
+        let words = match (planar, in_a_disk) {
+            (false, _) => "no",
+            (true, false) => "yes, but not with its boundary in this order on the rim of a disk",
+            (true, true) => "yes, with its boundary in this order on the rim of a disk",
+        };
+        say("planar", words.to_owned());
+    }
     if let Some(t) = s.tiling {
         say("tiling", format!("{{{},{}}}, {}", t.polygon, t.around, t.curvature));
         say("edge", format!("{:.9}", t.edge));

@@ -44,11 +44,13 @@ pub struct Survey {
     pub components: usize,
     /// Independent cycles: 0 for a forest.
     pub cycles: usize,
-    /// Whether it can be drawn in the plane without crossings.
-    pub planar: bool,
+    /// Whether it can be drawn in the plane without crossings; nothing where it was not asked.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub planar: Option<bool>,
     /// Whether it can be drawn in a disk without crossings, the boundary legs ending on the
-    /// rim in their order.
-    pub planar_in_a_disk: bool,
+    /// rim in their order; nothing where it was not asked.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub planar_in_a_disk: Option<bool>,
     /// Blocks and how many tensors are made of each, by name and dimensions.
     pub blocks: BTreeMap<String, usize>,
     /// Lengths of the tiling, where it is one.
@@ -84,6 +86,15 @@ pub struct TilingSurvey {
 impl Survey {
     /// Looks a network through. Time and memory linear in legs, but for a sort of the bonds.
     pub fn of(network: &Network) -> Self {
+        Self {
+            planar: Some(planar(network, false)),
+            planar_in_a_disk: Some(planar(network, true)),
+            ..Self::without_planarity(network)
+        }
+    }
+    /// Like [`Self::of`], but does not ask for planarity, which takes most of the time and
+    /// memory.
+    pub fn without_planarity(network: &Network) -> Self {
         let mut dimensions = BTreeMap::new();
         let open = network.open_flags();
         let mut hyperedges = 0;
@@ -137,8 +148,8 @@ impl Survey {
             degrees,
             components,
             cycles: joins + components - network.tensors(),
-            planar: planar(network, false),
-            planar_in_a_disk: planar(network, true),
+            planar: None,
+            planar_in_a_disk: None,
             blocks,
             tiling: layout.and_then(|l| l.tiling).and_then(tiling),
         }
