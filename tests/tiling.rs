@@ -278,7 +278,7 @@ fn a_vertex_may_be_the_middle() {
         let grown = grow(&growth, LIMIT).unwrap();
         let sizes = grown.ring_sizes();
         assert_eq!(sizes[0] as u64, q, "{tiling}");
-        assert!(sizes[1..].iter().all(|s| *s as u64 % q == 0), "{tiling}: {sizes:?}");
+        assert!(sizes[1..].iter().all(|s| (*s as u64).is_multiple_of(q)), "{tiling}: {sizes:?}");
         let (v, e, f) = grown.euler_counts();
         assert_eq!(v + f - e, 1, "{tiling}");
     }

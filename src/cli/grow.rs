@@ -381,7 +381,7 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
         Family::Wormhole(a) => {
             let one = a.patch.recipe()?;
             let recipe = WormholeRecipe { other: one.clone(), one, twist: a.twist };
-            (Recipe::Wormhole(recipe), &a.patch.output)
+            (Recipe::Wormhole(Box::new(recipe)), &a.patch.output)
         }
         Family::Lattice(a) => (Recipe::Lattice(a.recipe()), &a.output),
         Family::Tree(a) => (Recipe::Tree(a.recipe()), &a.output),

@@ -1,6 +1,6 @@
 //! Patches of tilings: who is whose neighbour, in which order the open sides follow.
 //!
-//! [`grow`] lays tiles ring by ring and decides by counting alone, never by coordinates, who
+//! [`grow()`] lays tiles ring by ring and decides by counting alone, never by coordinates, who
 //! touches whom; the result is a [`Patch`]. [`geometry`] computes places afterwards, for
 //! drawing only.
 

@@ -133,10 +133,10 @@ impl BlockShelf {
         let path = self.folder.join(relative);
         // A link could still lead out of the folder.
         let base = if self.folder.as_os_str().is_empty() { Path::new(".") } else { &self.folder };
-        if let (Ok(base), Ok(real)) = (base.canonicalize(), path.canonicalize()) {
-            if !real.starts_with(base) {
-                return Err(leaves());
-            }
+        if let (Ok(base), Ok(real)) = (base.canonicalize(), path.canonicalize())
+            && !real.starts_with(base)
+        {
+            return Err(leaves());
         }
         if let Ok(about) = std::fs::metadata(&path) {
             let bytes = about.len();

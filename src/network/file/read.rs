@@ -273,10 +273,10 @@ fn explicit(
             }
         };
         let given = raw.tensor_names.get(t).and_then(|n| n.as_deref());
-        if let Some(given) = given {
-            if !names.number(given).is_some_and(|(_, new)| new) {
-                return Err(Problem::TensorTwice { name: given.to_owned() });
-            }
+        if let Some(given) = given
+            && !names.number(given).is_some_and(|(_, new)| new)
+        {
+            return Err(Problem::TensorTwice { name: given.to_owned() });
         }
         builder.tensor(given, &legs, &block)?;
     }

@@ -95,10 +95,8 @@ fn arrays(
 ) -> io::Result<BTreeMap<usize, BlockSource>> {
     let mut made = BTreeMap::new();
     let put = |path: PathBuf, block: usize| -> io::Result<()> {
-        if let Some(folder) = path.parent() {
-            if !folder.as_os_str().is_empty() {
-                fs::create_dir_all(folder)?;
-            }
+        if let Some(folder) = path.parent().filter(|f| !f.as_os_str().is_empty()) {
+            fs::create_dir_all(folder)?;
         }
         let numbers = network.blocks()[block].entries().to_dense().to_complex();
         beside(&path, |out| {

@@ -5,7 +5,7 @@
 //! | edge list, one edge a line | [`read_graph`] with [`GraphFormat::Edges`] |
 //! | GraphML | [`read_graph`] with [`GraphFormat::GraphMl`] |
 //! | `.gr`, the treewidth challenge's format | [`read_graph`] with [`GraphFormat::Gr`] |
-//! | `ab,bc->ac` | [`einsum`] |
+//! | `ab,bc->ac` | [`einsum()`] |
 
 mod edge_list;
 mod einsum;

@@ -48,7 +48,7 @@ pub enum Recipe {
     /// A patch of a tiling.
     Tiling(TilingRecipe),
     /// Two patches glued along holes.
-    Wormhole(WormholeRecipe),
+    Wormhole(Box<WormholeRecipe>),
     /// A lattice.
     Lattice(LatticeRecipe),
     /// A complete tree.
@@ -104,7 +104,7 @@ impl Recipe {
     ) -> Result<Self, Problem> {
         Ok(match family {
             "tiling" => Self::Tiling(TilingRecipe::read(map, "[tiling]")?),
-            "wormhole" => Self::Wormhole(WormholeRecipe::read(map)?),
+            "wormhole" => Self::Wormhole(Box::new(WormholeRecipe::read(map)?)),
             "lattice" => Self::Lattice(LatticeRecipe::read(map)?),
             "tree" => Self::Tree(TreeRecipe::read(map)?),
             "layered" => Self::Layered(LayeredRecipe::read(map)?),
