@@ -1,11 +1,14 @@
 //! `lierne draw`: a network as a picture.
 
-use super::common::write_file;
+use super::common::{default_memory, write_file};
 use super::{Common, Failure, Verdict};
-use crate::entropy::closure::{Side, reach};
+use crate::code::Code;
+use crate::code::recover::judge;
+use crate::entropy::closure::Side;
 use crate::entropy::{Asker, Request, Wires};
-use crate::network::{Limits, Network, Region, TensorId, load};
+use crate::network::{Limits, Network, Overrides, Region, TensorId, from_toml, load};
 use crate::study::picture::{Ink, Marks, Options, Picture, Reach, Scene, Share, png};
+use crate::study::{StudyFile, case};
 use crate::tensor::Label;
 use serde_json::json;
 use std::path::{Path, PathBuf};
@@ -21,7 +24,7 @@ Examples:
 A drawing is made for one journal column: 85 mm wide, text of 6 points. Hyperbolic tilings
 are drawn in the Poincaré disk; tiles smaller than a printed dot are left out.")]
 pub struct Args {
-    /// The network file
+    /// The network file; of a study file, the first network is drawn
     #[arg(value_name = "NET")]
     network: PathBuf,
     /// File to write, .svg or .png; without it the SVG goes to stdout
@@ -88,8 +91,8 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
     if args.out.is_none() && common.json {
         return Err(Failure::new("with --json the picture needs a file; name one with --out"));
     }
-    let network = load(&args.network, &Limits::default())?;
-    let marks = marks(args, &network)?;
+    let network = network_of(&args.network)?;
+    let marks = marks(args, &network, common)?;
     let options = Options {
         width_mm: args.width,
         ink: if args.dark { Ink::Dark } else { Ink::Light },
@@ -156,7 +159,7 @@ fn tell(
 }
 
 /// What is marked on the picture.
-fn marks(args: &Args, network: &Network) -> Result<Marks, Failure> {
+fn marks(args: &Args, network: &Network, common: &Common) -> Result<Marks, Failure> {
     let Some(text) = &args.region else { return Ok(Marks::default()) };
     let region = Region::parse(text, network)?;
     let mut marks = Marks::default();
@@ -187,7 +190,7 @@ fn marks(args: &Args, network: &Network) -> Result<Marks, Failure> {
         if network.bulk().is_empty() {
             return Err(Failure::new("--recover: the network has no bulk legs"));
         }
-        marks.bulk = recoverable(network, &wires, &region);
+        marks.bulk = recoverable(network, &region, common)?;
     }
     marks.region = Some(region);
     Ok(marks)
@@ -215,26 +218,43 @@ fn front(network: &Network, region: &Region, owner: &[Option<Side>]) -> Vec<Labe
         .collect()
 }
 
-/// Who recovers each bulk leg by absorbing the tensor that holds it from boundary legs alone.
-fn recoverable(network: &Network, wires: &Wires<'_>, region: &Region) -> Vec<(Label, Reach)> {
-    let sites = region.flags().len();
-    let known = |mine: bool| -> Vec<bool> {
-        (0..wires.open()).map(|k| k < sites && region.flags()[k] == mine).collect()
+/// Who can recover each bulk leg; those that the default budget leaves open get no mark.
+fn recoverable(
+    network: &Network,
+    region: &Region,
+    common: &Common,
+) -> Result<Vec<(Label, Reach)>, Failure> {
+    let code = Code::prepared(network, common)?;
+    let budget = Request { memory_bytes: default_memory(), ..Request::default() };
+    let answer = judge(&code, region, &budget, common)?;
+    common.clear();
+    let lists = [
+        (&answer.recoverable, Reach::Region),
+        (&answer.from_complement, Reach::Rest),
+        (&answer.neither, Reach::Nobody),
+    ];
+    if !answer.undecided.is_empty() {
+        common.remark(format_args!(
+            "{} bulk legs are undecided and stay unmarked",
+            answer.undecided.len()
+        ));
+    }
+    Ok(lists
+        .into_iter()
+        .flat_map(|(legs, reach)| legs.iter().map(move |&k| (network.bulk()[k], reach)))
+        .collect())
+}
+
+/// The network of a file; of a study file, the first that it asks about.
+fn network_of(path: &Path) -> Result<Network, Failure> {
+    let limits = Limits::default();
+    let error = match load(path, &limits) {
+        Ok(network) => return Ok(network),
+        Err(error) => error,
     };
-    let (ours, theirs) = (reach(wires, &known(true)), reach(wires, &known(false)));
-    network
-        .bulk()
-        .iter()
-        .map(|&label| {
-            let by = |side: &[bool]| network.holders(label).iter().any(|t| side[t.index()]);
-            let who = if by(&ours) {
-                Reach::Region
-            } else if by(&theirs) {
-                Reach::Rest
-            } else {
-                Reach::Nobody
-            };
-            (label, who)
-        })
-        .collect()
+    // A study file is no network file; whatever else is wrong is told as the network's.
+    let Ok(study) = StudyFile::load(path) else { return Err(error.into()) };
+    let cases = case::all(&study)?;
+    let first = cases.first().ok_or(error)?;
+    Ok(from_toml(&first.table, &first.folder, &first.id, &limits, &Overrides::default())?)
 }

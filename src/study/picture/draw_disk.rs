@@ -87,15 +87,24 @@ pub(super) fn draw(scene: &Scene<'_>, graph: &Graph, placement: &Placement, canv
 }
 
 /// The mean of a face's corners, in the Klein disk, where faces are convex more often than
-/// not; sites weigh little, so that corners of boundary legs stay off the rim.
+/// not. A face at the rim has its heart nearer to the nodes at its two ends, drawn a little
+/// towards their sites.
 fn heart(vertices: &[usize], flat: &[[f64; 2]], nodes: usize) -> Complex64 {
+    let n = vertices.len();
+    let site = |k: usize| vertices[k % n] >= nodes;
+    let at_rim = (0..n).any(site);
     let (mut sum, mut total) = (Complex64::new(0.0, 0.0), 0.0);
-    for &v in vertices {
-        let w = if v < nodes { 1.0 } else { 0.22 };
-        sum += w * Complex64::new(flat[v][0], flat[v][1]);
+    for k in 0..n {
+        let w = match (at_rim, site(k)) {
+            (false, _) => 1.0,
+            (true, true) => 0.3,
+            (true, false) if site(k + 1) || site(k + n - 1) => 1.0,
+            (true, false) => 0.5,
+        };
+        sum += w * Complex64::new(flat[vertices[k]][0], flat[vertices[k]][1]);
         total += w;
     }
-    poincare(sum / f64::max(total, 1.0))
+    poincare(sum / f64::max(total, 0.1))
 }
 
 /// The wall that an edge passes through: from the heart of the face on its right to that on

@@ -56,6 +56,24 @@ fn frame(scene: &Scene<'_>, tiles: &Tiles, canvas: &mut Canvas) -> Vec<View> {
     if tiles.plane == Plane::Hyperbolic {
         return stones::disks(scene, canvas, tiles.sheets);
     }
+    if tiles.plane == Plane::Spherical {
+        let wide = WIDTH / tiles.sheets as f64;
+        let unit = wide / 2.0 - 46.0;
+        let views: Vec<View> = (0..tiles.sheets)
+            .map(|k| View {
+                origin: [wide * (k as f64 + 0.5), canvas.top + 30.0 + unit],
+                unit,
+                globe: true,
+            })
+            .collect();
+        for view in &views {
+            let mut p = Path::new();
+            p.circle(view.origin, unit);
+            canvas.sheet.shape(Layer::Ground, "disk", What::Nothing, p.into_text());
+        }
+        canvas.bottom = canvas.top + 2.0 * unit + 60.0;
+        return views;
+    }
     let (mut low, mut high) = ([f64::INFINITY; 2], [f64::NEG_INFINITY; 2]);
     for t in (0..tiles.tiles.len()).filter(|&t| tiles.tiles[t].is_some()) {
         for s in 0..tiles.p {
@@ -84,6 +102,7 @@ fn frame(scene: &Scene<'_>, tiles: &Tiles, canvas: &mut Canvas) -> Vec<View> {
                 canvas.top + room + unit * high[1],
             ],
             unit,
+            globe: false,
         })
         .collect()
 }
@@ -166,7 +185,7 @@ fn ribs(scene: &Scene<'_>, tiles: &Tiles, canvas: &mut Canvas, views: &Views, t:
         let Some(u) = other(scene.network, label, t) else { continue };
         // Each bond once, at the nearer end.
         let Some(there) = tiles.tiles[u] else {
-            cap(canvas, tiles, view, t, k);
+            cap(scene, canvas, tiles, view, [t, u, k]);
             continue;
         };
         if tiles.sheet[u] != tiles.sheet[t] {
@@ -240,13 +259,21 @@ fn letters(number: usize) -> String {
 }
 
 /// A state on a leg that has no side of its own: a small cap beside the boss.
-fn cap(canvas: &mut Canvas, tiles: &Tiles, view: View, t: usize, k: usize) {
+fn cap(
+    scene: &Scene<'_>,
+    canvas: &mut Canvas,
+    tiles: &Tiles,
+    view: View,
+    [t, state, k]: [usize; 3],
+) {
     let size = tiles.size(t) * view.unit;
-    canvas.drawn.visible_bonds += 1;
-    canvas.drawn.bonds += 1;
-    if size < 9.0 {
+    if size < SEEN {
         return;
     }
+    canvas.drawn.tensors += 1;
+    canvas.drawn.visible_tensors += 1;
+    canvas.drawn.visible_bonds += 1;
+    canvas.drawn.bonds += 1;
     let c = view.at(tiles.along(t, 0.5 + k as f64 - tiles.p as f64, 0.42));
     let r = (size * 0.09).min(6.0);
     let mut p = Path::new();
@@ -258,7 +285,9 @@ fn cap(canvas: &mut Canvas, tiles: &Tiles, view: View, t: usize, k: usize) {
     stem.move_to(canvas.tensors[t].expect("placed before"));
     stem.line_to(c);
     canvas.sheet.shape(Layer::Rib, "rib k2", What::Nothing, stem.into_text());
-    canvas.sheet.shape(Layer::Boss, "cap", What::Nothing, p.into_text());
+    canvas.tensors[state] = Some(c);
+    let class = if size < 9.0 { "boss cap far" } else { "boss cap" };
+    canvas.sheet.shape(Layer::Boss, class, Canvas::tensor(scene, state), p.into_text());
 }
 
 fn boss(scene: &Scene<'_>, tiles: &Tiles, canvas: &mut Canvas, views: &Views, t: usize) {

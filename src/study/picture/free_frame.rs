@@ -68,7 +68,7 @@ pub(super) fn frame<'a>(
         (low, high) = ([0.0; 2], [1.0; 2]);
     }
     let stubs = lines.iter().any(|l| matches!(l, Line::Stubs));
-    let margin = if placement.shape == Shape::Upright { 26.0 } else { 46.0 };
+    let margin = if placement.shape == Shape::Upright { 34.0 } else { 46.0 };
     let extra = if stubs { step } else { 0.0 };
     let span = [high[0] - low[0] + 2.0 * extra, high[1] - low[1] + 2.0 * extra];
     let across = (WIDTH - 2.0 * margin) / span[0].max(1e-9);
@@ -79,7 +79,7 @@ pub(super) fn frame<'a>(
         WIDTH / 2.0 - unit * f64::midpoint(low[0], high[0]),
         canvas.top + margin + unit * (high[1] + extra),
     ];
-    let view = View { origin, unit };
+    let view = View { origin, unit, globe: false };
     let put = |p: &[f64; 2]| view.at(Complex64::new(p[0], p[1]));
     let at: Vec<[f64; 2]> = nodes.iter().map(put).collect();
     let below = if placement.shape == Shape::Upright && scene.options.numbers {

@@ -26,10 +26,14 @@ pub(super) fn number(out: &mut String, x: f64) {
 pub(super) struct View {
     pub(super) origin: [f64; 2],
     pub(super) unit: f64,
+    /// Whether points are those of a sphere in stereographic projection, to be shown in the
+    /// unit disk by the projection that keeps areas, r = sin(θ/2).
+    pub(super) globe: bool,
 }
 
 impl View {
     pub(super) fn at(self, z: Complex64) -> [f64; 2] {
+        let z = if self.globe { z / (1.0 + z.norm_sqr()).sqrt() } else { z };
         [self.origin[0] + self.unit * z.re, self.origin[1] - self.unit * z.im]
     }
 }
@@ -101,6 +105,9 @@ impl Path {
     }
     /// The straight line of the plane from `a`, where the pen stands, to `b`.
     pub(super) fn geodesic_to(&mut self, plane: Plane, view: View, a: Complex64, b: Complex64) {
+        if view.globe {
+            return self.great_circle_to(view, a, b);
+        }
         let end = view.at(b);
         match plane.line(a, b) {
             // The arc strays from its chord by chord²/(8·radius); below a twentieth of a
@@ -110,6 +117,29 @@ impl Path {
                 self.arc_to(rho * view.unit, false, turn < 0.0, end);
             }
             _ => self.line_to(end),
+        }
+    }
+    /// The great circle's shorter arc from `a` to `b` in steps, parted where it runs through
+    /// the pole that the whole rim stands for.
+    fn great_circle_to(&mut self, view: View, a: Complex64, b: Complex64) {
+        let plane = Plane::Spherical;
+        let way = plane.centre(a, b);
+        let far = way.norm();
+        if far < 1e-12 {
+            return self.line_to(view.at(b));
+        }
+        let steps = 48;
+        let mut last = view.at(a);
+        for k in 1..=steps {
+            let part = (far.atan() * f64::from(k) / f64::from(steps)).tan();
+            let next = view.at(plane.carry(a, way / far * part));
+            let jump = (next[0] - last[0]).hypot(next[1] - last[1]) > view.unit * 0.7;
+            if jump {
+                self.move_to(next)
+            } else {
+                self.line_to(next)
+            }
+            last = next;
         }
     }
     /// A full circle. Centre and radius are rounded first, so that the two halves meet.

@@ -17,22 +17,25 @@ pub(super) const STONE: (f64, f64) = (1.012, 1.062);
 /// Half the widest stone, in radians.
 const WIDEST: f64 = 0.3;
 
-/// Lays unit disks out on the canvas, side by side, and draws them.
+/// Lays unit disks out on the canvas, one below the other, and draws them.
 pub(super) fn disks(scene: &Scene<'_>, canvas: &mut Canvas, count: usize) -> Vec<View> {
     let digits = scene.network.boundary().len().to_string();
     let room = if scene.options.numbers { text::width(&digits, TEXT) + 8.0 } else { 0.0 };
-    let wide = WIDTH / count as f64;
-    let unit = ((wide / 2.0 - 6.0 - room) / STONE.1).max(10.0);
-    let drop = canvas.top + wide / 2.0 - 4.0 - (room - TEXT).max(0.0);
-    let views: Vec<View> =
-        (0..count).map(|k| View { origin: [wide * (k as f64 + 0.5), drop], unit }).collect();
-    for view in &views {
+    let unit = (WIDTH / 2.0 - 6.0 - room) / STONE.1;
+    let below = unit * STONE.1 + if room > 0.0 { TEXT + 6.0 } else { 4.0 };
+    let above = WIDTH / 2.0 - 4.0 - (room - TEXT).max(0.0);
+    let mut top = canvas.top;
+    let mut views = Vec::with_capacity(count);
+    for _ in 0..count {
+        let view = View { origin: [WIDTH / 2.0, top + above], unit, globe: false };
         let mut p = Path::new();
         p.circle(view.origin, unit);
         canvas.sheet.shape(Layer::Ground, "disk", What::Nothing, p.into_text());
+        top = view.origin[1] + below;
+        views.push(view);
     }
     canvas.disk = (count == 1).then(|| (views[0].origin, unit));
-    canvas.bottom = drop + unit * STONE.1 + if room > 0.0 { TEXT + 6.0 } else { 4.0 };
+    canvas.bottom = top;
     views
 }
 

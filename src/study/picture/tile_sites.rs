@@ -48,7 +48,7 @@ pub(super) fn doors(scene: &Scene<'_>, tiles: &Tiles) -> Vec<Option<Door>> {
     let mut rim = vec![0usize; n];
     for s in 1..n {
         let touch = match (doors[s - 1], doors[s]) {
-            (Some(a), Some(b)) => {
+            (Some(a), Some(b)) if tiles.sheet[a.tensor] == tiles.sheet[b.tensor] => {
                 let gap = (tiles.wall(a.tensor, a.side).1 - tiles.wall(b.tensor, b.side).0).norm();
                 gap < 0.2 * tiles.size(a.tensor).min(tiles.size(b.tensor))
             }
@@ -228,17 +228,18 @@ pub(super) fn cut(
     doors: &[Option<Door>],
 ) {
     for &label in &scene.marks.cut {
-        let Some((t, s)) = wall_of(scene, tiles, label) else { continue };
-        let view = views.of(t);
-        let size = tiles.size(t) * view.unit;
-        if size < SEEN {
-            continue;
+        for (t, s) in walls_of(scene, tiles, label) {
+            let view = views.of(t);
+            let size = tiles.size(t) * view.unit;
+            if size < SEEN {
+                continue;
+            }
+            let (a, b) = tiles.wall(t, s);
+            let mut p = Path::new();
+            p.move_to(view.at(a));
+            p.geodesic_to(tiles.plane, view, a, b);
+            canvas.cut(level(size), What::Nothing, p.into_text());
         }
-        let (a, b) = tiles.wall(t, s);
-        let mut p = Path::new();
-        p.move_to(view.at(a));
-        p.geodesic_to(tiles.plane, view, a, b);
-        canvas.cut(level(size), What::Nothing, p.into_text());
     }
     let n = doors.len();
     let mut first = 0;
@@ -292,16 +293,19 @@ fn cut_end(tiles: &Tiles, canvas: &mut Canvas, view: View, d: Door, e: Door) {
     canvas.cut(level(small * view.unit), What::Nothing, p.into_text());
 }
 
-/// The wall that a label crosses, seen from its larger tile.
-fn wall_of(scene: &Scene<'_>, tiles: &Tiles, label: Label) -> Option<(usize, usize)> {
-    let mut best: Option<(usize, usize)> = None;
+/// The wall that a label crosses, seen from its larger tile: one in each patch.
+fn walls_of(scene: &Scene<'_>, tiles: &Tiles, label: Label) -> Vec<(usize, usize)> {
+    let mut walls: Vec<(usize, usize)> = Vec::new();
     for holder in scene.network.holders(label) {
         let t = holder.index();
-        if let (Some(_), Some(s)) = (tiles.tiles[t], tiles.side(scene.network, t, label))
-            && best.is_none_or(|(u, _)| tiles.size(t) > tiles.size(u))
-        {
-            best = Some((t, s));
+        let Some(s) = tiles.tiles[t].and_then(|_| tiles.side(scene.network, t, label)) else {
+            continue;
+        };
+        match walls.iter_mut().find(|w| tiles.sheet[w.0] == tiles.sheet[t]) {
+            None => walls.push((t, s)),
+            Some(w) if tiles.size(t) > tiles.size(w.0) => *w = (t, s),
+            Some(_) => {}
         }
     }
-    best
+    walls
 }

@@ -179,7 +179,9 @@ impl Tiles {
     }
     /// On-paper distance from a tile's centre to its side.
     pub(super) fn size(&self, t: usize) -> f64 {
-        self.tiles[t].map_or(0.0, |tile| tile.scale * self.middle)
+        // The globe is drawn without a change of areas: all its tiles are of one size.
+        let scale = |tile: Tile| if self.plane == Plane::Spherical { 1.0 } else { tile.scale };
+        self.tiles[t].map_or(0.0, |tile| scale(tile) * self.middle)
     }
 }
 

@@ -33,3 +33,20 @@ pub(super) fn place(network: &Network, graph: &Graph) -> Option<Placement> {
     }
     Some(Placement { shape: Shape::Lattice, nodes, sites: vec![None; graph.sites.len()] })
 }
+
+/// Whether most bonds are of one length, as on a lattice.
+pub(super) fn is_lattice(graph: &Graph, placement: &Placement) -> bool {
+    let at = &placement.nodes;
+    let mut long: Vec<f64> = graph
+        .edges
+        .iter()
+        .map(|e| (at[e.a][0] - at[e.b][0]).hypot(at[e.a][1] - at[e.b][1]))
+        .collect();
+    if long.len() < 2 {
+        return true;
+    }
+    long.sort_by(f64::total_cmp);
+    let median = long[long.len() / 2];
+    let same = long.iter().filter(|l| (*l - median).abs() < 0.05 * median).count();
+    2 * same >= long.len()
+}

@@ -1,7 +1,7 @@
 //! Where nodes go when no tiling says it.
 //!
-//! - [`given`]: places that the network brings along (lattices, layered networks);
 //! - [`tree`]: trees upright, chains in a row;
+//! - [`given`]: places that the network brings along, first choice for lattices;
 //! - [`rubber`]: networks whose boundary can be pinned to a circle, everything inside held by
 //!   springs: what is planar comes out without a crossing (Proc. London Math. Soc. 13, 743
 //!   (1963)); read as the Klein disk, its straight lines are geodesics of the Poincaré disk;
@@ -41,14 +41,12 @@ pub(super) struct Placement {
 
 /// The placement that suits a network. Deterministic.
 pub(super) fn place(network: &Network, graph: &Graph) -> Placement {
-    if let Some(p) = given::place(network, graph) {
-        return p;
-    }
     if graph.nodes > 1 && graph.is_forest() && graph.components().len() == 1 {
         return tree::place(network, graph);
     }
-    if let Some(p) = rubber::place(graph) {
-        return p;
+    let given = given::place(network, graph);
+    match given {
+        Some(p) if given::is_lattice(graph, &p) => p,
+        given => rubber::place(graph).or(given).unwrap_or_else(|| stress::place(graph)),
     }
-    stress::place(graph)
 }

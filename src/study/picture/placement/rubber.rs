@@ -24,6 +24,7 @@ pub(super) fn place(graph: &Graph) -> Option<Placement> {
         2 => 2.0,
         _ => 1.0,
     };
+    let (loose, held) = pendants(graph);
     let mut weight = vec![0.0; graph.nodes];
     let mut pull = vec![[0.0; 2]; graph.nodes];
     for (s, &v) in graph.sites.iter().enumerate() {
@@ -31,16 +32,21 @@ pub(super) fn place(graph: &Graph) -> Option<Placement> {
         pull[v][0] += strength * pins[s][0];
         pull[v][1] += strength * pins[s][1];
     }
-    for e in &graph.edges {
+    for e in graph.edges.iter().filter(|e| held[e.a] && held[e.b]) {
         weight[e.a] += 1.0;
         weight[e.b] += 1.0;
     }
-    if weight.contains(&0.0) {
+    if (0..graph.nodes).any(|v| held[v] && weight[v] == 0.0) {
         return None;
     }
-    let x = solve(graph, &weight, &pull.iter().map(|p| p[0]).collect::<Vec<_>>());
-    let y = solve(graph, &weight, &pull.iter().map(|p| p[1]).collect::<Vec<_>>());
-    let klein: Vec<[f64; 2]> = x.into_iter().zip(y).map(|(x, y)| [x, y]).collect();
+    let x = solve(graph, &held, &weight, &pull.iter().map(|p| p[0]).collect::<Vec<_>>());
+    let y = solve(graph, &held, &weight, &pull.iter().map(|p| p[1]).collect::<Vec<_>>());
+    let mut klein: Vec<[f64; 2]> = x.into_iter().zip(y).map(|(x, y)| [x, y]).collect();
+    let mut set = held;
+    for &v in loose.iter().rev() {
+        hang(graph, &mut klein, &pins, &set, v);
+        set[v] = true;
+    }
     if !apart(graph, &klein) || crossings(graph, &klein, &pins) > 0 {
         return None;
     }
@@ -74,12 +80,71 @@ fn poincare(p: [f64; 2]) -> [f64; 2] {
     [p[0] * f, p[1] * f]
 }
 
-/// Solves (weights − adjacency) x = pull.
-fn solve(graph: &Graph, weight: &[f64], pull: &[f64]) -> Vec<f64> {
+/// Nodes that springs would draw onto their only neighbour, in the order in which they fall
+/// off, and one flag a node: whether it stays.
+fn pendants(graph: &Graph) -> (Vec<usize>, Vec<bool>) {
+    let mut held = vec![true; graph.nodes];
+    let mut sited = vec![false; graph.nodes];
+    for &v in &graph.sites {
+        sited[v] = true;
+    }
+    let only = |v: usize, held: &[bool]| {
+        let mut others = graph.around(v).iter().map(|n| n.0).filter(|&w| w != v && held[w]);
+        let first = others.next();
+        others.all(|w| Some(w) == first)
+    };
+    let mut loose: Vec<usize> = (0..graph.nodes).filter(|&v| !sited[v] && only(v, &held)).collect();
+    let mut i = 0;
+    while i < loose.len() {
+        let v = loose[i];
+        held[v] = false;
+        for &(w, _) in graph.around(v) {
+            if held[w] && !sited[w] && only(w, &held) && !loose.contains(&w) {
+                loose.push(w);
+            }
+        }
+        i += 1;
+    }
+    (loose, held)
+}
+
+/// Places a pendant in the widest gap at its neighbour, half as far as that one's nearest.
+fn hang(graph: &Graph, at: &mut [[f64; 2]], pins: &[[f64; 2]], set: &[bool], v: usize) {
+    let Some(&(w, _)) = graph.around(v).iter().find(|n| set[n.0]) else { return };
+    let sites = (0..pins.len()).filter(|&s| graph.sites[s] == w).map(|s| pins[s]);
+    let others: Vec<[f64; 2]> =
+        graph.around(w).iter().filter(|n| set[n.0]).map(|n| at[n.0]).chain(sites).collect();
+    let from = at[w];
+    let mut looks: Vec<f64> =
+        others.iter().map(|p| (p[1] - from[1]).atan2(p[0] - from[0])).collect();
+    looks.sort_by(f64::total_cmp);
+    let near = others.iter().map(|p| (p[0] - from[0]).hypot(p[1] - from[1]));
+    let near = near.fold(0.4, f64::min) * 0.5;
+    let mut best = (0.0, 0.0);
+    for (i, &a) in looks.iter().enumerate() {
+        let gap = (looks[(i + 1) % looks.len()] - a).rem_euclid(TAU);
+        let gap = if looks.len() == 1 { TAU } else { gap };
+        if gap > best.0 {
+            best = (gap, a + gap / 2.0);
+        }
+    }
+    at[v] = [from[0] + near * best.1.cos(), from[1] + near * best.1.sin()];
+}
+
+/// Solves (weights − adjacency) x = pull on the nodes that are held; others stay at 0.
+fn solve(graph: &Graph, held: &[bool], weight: &[f64], pull: &[f64]) -> Vec<f64> {
     let n = graph.nodes;
+    let weight: Vec<f64> = (0..n).map(|v| if held[v] { weight[v] } else { 1.0 }).collect();
+    let weight = &weight;
     let apply = |x: &[f64]| -> Vec<f64> {
         (0..n)
-            .map(|v| weight[v] * x[v] - graph.around(v).iter().map(|&(w, _)| x[w]).sum::<f64>())
+            .map(|v| {
+                if !held[v] {
+                    return x[v];
+                }
+                let pulls = graph.around(v).iter().filter(|n| held[n.0]).map(|n| x[n.0]);
+                weight[v] * x[v] - pulls.sum::<f64>()
+            })
             .collect()
     };
     let dot = |a: &[f64], b: &[f64]| a.iter().zip(b).map(|(a, b)| a * b).sum::<f64>();
