@@ -343,7 +343,14 @@ class Disk {
       this.canvas.setPointerCapture(event.pointerId);
       this.choose(s, 1);
     });
-    this.canvas.addEventListener("pointermove", (event) => { if (from >= 0) at(event); });
-    for (const end of ["pointerup", "pointercancel"]) this.canvas.addEventListener(end, () => { from = -1; });
+    // At most one step a frame, however many moves come.
+    let waiting = null;
+    const step = () => { const event = waiting; waiting = null; if (event && from >= 0) at(event); };
+    this.canvas.addEventListener("pointermove", (event) => {
+      if (from < 0) return;
+      if (!waiting) requestAnimationFrame(step);
+      waiting = event;
+    });
+    for (const end of ["pointerup", "pointercancel"]) this.canvas.addEventListener(end, () => { step(); from = -1; });
   }
 }

@@ -148,6 +148,18 @@ class Net {
       this.legs[t].forEach(learn);
     }
   }
+  /** Weight of the wires between both sides where nothing is left over: the entropy, exactly. */
+  between(side, flags) {
+    let sum = 0;
+    for (let l = 0; l < this.holders.length; l++) {
+      const ends = this.holders[l], site = this.siteOf[l];
+      const open = site >= 0 ? (flags[site] ? 1 : 2) : this.isBulk[l] ? 2 : 0;
+      if (this.ends[l] + (open ? 1 : 0) > 2) return null;
+      const a = side[ends[0]], b = open || side[ends[ends.length - 1]];
+      if (a !== b) sum += this.weight(l);
+    }
+    return sum;
+  }
   /** 1 for what the region absorbs, 2 for what its complement does, 0 for the core. */
   closure(flags) {
     let best = null, least = Infinity;
@@ -156,8 +168,9 @@ class Net {
       for (const side of order) this.sweep(flags, side, taken, side ? 1 : 2);
       const core = taken.reduce((k, m) => k + (m === 0), 0);
       if (core < least) { least = core; best = taken; }
+      if (core === 0) break;
     }
-    return { side: best, core: least };
+    return { side: best, core: least, wires: least === 0 ? this.between(best, flags) : null };
   }
 }
 const nets = new Map();

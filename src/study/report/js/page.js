@@ -68,7 +68,14 @@ function evidenceSays(c, a) {
 function update() {
   const { c, flags } = state;
   disk.show(c, flags);
-  const text = shown(flags), one = interval(flags), a = c.answer(flags);
+  const text = shown(flags), one = interval(flags);
+  let a = c.answer(flags);
+  // A region that the study did not ask about: where closure leaves nothing over, it is the
+  // proof, and the page has it.
+  if (!a && disk.closure.wires !== null && Math.abs(disk.closure.wires - disk.cut.size) < 1e-9) {
+    const s = typeof c.dims === "number" ? disk.closure.wires : disk.closure.wires / c.unit;
+    a = { cutLegs: disk.cut.labels.length, cut: s, entropy: s, lower: s, upper: s, evidence: 0, error: 0, core: 0, price: null, how: "Not asked by the study; found by this page: absorbing tensors from both sides leaves nothing over, so that the cut is exact." };
+  }
   const sites = flags.reduce((s, f) => s + f, 0);
   if (document.activeElement !== el("region") || el("region").dataset.typed !== "1") el("region").value = text;
   el("region-wrong").textContent = "";
