@@ -421,3 +421,177 @@ pub fn shift_or_clock(dim: usize, shift: bool) -> Array2<Complex64> {
         }
     })
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::code::pauli;
+    use crate::network::{Limits, Network, Overrides, from_toml};
+    use crate::watch::Silent;
+
+    fn network(text: &str) -> Network {
+        let table: toml::Table = text.parse().unwrap();
+        let none = Overrides::default();
+        from_toml(&table, std::path::Path::new(""), "push", &Limits::default(), &none).unwrap()
+    }
+
+    /// Two encoders in a row, one bond, two bulk legs.
+    fn pair(dim: usize, block: &str) -> Network {
+        network(&format!(
+            r#"
+dimension = {dim}
+boundary = ["a0", "a1", "a2", "a3", "b0", "b1", "b2", "b3"]
+bulk = ["k0", "k1"]
+tensor = [
+  {{ legs = ["a0", "a1", "x", "a2", "a3", "k0"], block = "{block}" }},
+  {{ legs = ["b0", "x", "b1", "b2", "b3", "k1"], block = "{block}" }},
+]
+"#
+        ))
+    }
+
+    /// The terms written out on all boundary legs, applied to V and compared with V·A.
+    fn miss(code: &Code<'_>, leg: usize, operator: &Array2<Complex64>, pushed: &Pushed) -> f64 {
+        let v = dense::array(code, "a test", &Budget::default(), &Silent).unwrap();
+        let n = code.boundary();
+        let dims: Vec<usize> = v.shape().to_vec();
+        let mut difference = ndarray::ArrayD::<Complex64>::zeros(v.raw_dim());
+        for (index, &z) in v.indexed_iter() {
+            for t in &pushed.terms {
+                let mut to: Vec<usize> = index.as_array_view().to_vec();
+                let mut value = z * Complex64::new(t.coefficient[0], t.coefficient[1]);
+                for site in 0..n {
+                    let powers: Vec<Power> = pauli_digits(dims[site])
+                        .into_iter()
+                        .map(|(prime, digit)| {
+                            let f = t
+                                .factors
+                                .iter()
+                                .find(|f| (f.site, f.prime, f.digit) == (site, prime, digit));
+                            let (x, z) = f.map_or((0, 0), |f| (f.x, f.z));
+                            Power { prime, digit, x, z }
+                        })
+                        .collect();
+                    let (moved, c) = act(&powers, dims[site], to[site]);
+                    to[site] = moved;
+                    value *= c;
+                }
+                difference[to.as_slice()] += value;
+            }
+            // V·A: entry b of the bulk axis collects V[c]·A[c, b].
+            let c = index[n + leg];
+            for b in 0..dims[n + leg] {
+                let mut to: Vec<usize> = index.as_array_view().to_vec();
+                to[n + leg] = b;
+                difference[to.as_slice()] -= z * operator[(c, b)];
+            }
+        }
+        let norm =
+            |a: &ndarray::ArrayD<Complex64>| a.iter().map(|z| z.norm_sqr()).sum::<f64>().sqrt();
+        norm(&difference) / norm(&v)
+    }
+
+    fn pauli_digits(dim: usize) -> Vec<(u32, usize)> {
+        crate::field::factorise(dim as u64)
+            .into_iter()
+            .flat_map(|(p, m)| (0..m as usize).map(move |d| (p as u32, d)))
+            .collect()
+    }
+
+    fn as_array(powers: &[Power], dim: usize) -> Array2<Complex64> {
+        let mut a = Array2::zeros((dim, dim));
+        for column in 0..dim {
+            let (row, c) = act(powers, dim, column);
+            a[(row, column)] = c;
+        }
+        a
+    }
+
+    #[test]
+    fn products_act_as_asked_on_the_full_array() {
+        for (dim, words) in [(2, &["X", "Z", "XZ"][..]), (3, &["X", "Z2", "X2Z"][..])] {
+            let net = pair(dim, "code-5-1-3");
+            let code = Code::prepared(&net, &Silent).unwrap();
+            for (leg, region) in [(0, "0..4"), (1, "4..8"), (0, "0..3,5..8")] {
+                let region = Region::parse(region, &net).unwrap();
+                for word in words {
+                    let powers = pauli::parse(word, &digits(&code, leg).unwrap()).unwrap();
+                    let pushed = pauli(&code, &region, leg, &powers);
+                    let pushed = match pushed {
+                        Ok(p) => p,
+                        Err(CodeError::CannotHold { .. }) => continue,
+                        Err(e) => panic!("{e}"),
+                    };
+                    let sites = &pushed.terms[0].factors;
+                    assert!(sites.iter().all(|f| region.flags()[f.site]));
+                    let m = miss(&code, leg, &as_array(&powers, dim), &pushed);
+                    assert!(m < 1e-12, "dimension {dim}, {word} on {leg}: {m}");
+                }
+            }
+            // Every region holds both operators of a leg or the rest holds something.
+            let held = Region::parse("0..4", &net).unwrap();
+            let x = pauli::parse("X", &digits(&code, 0).unwrap()).unwrap();
+            assert!(pauli(&code, &held, 0, &x).is_ok(), "four of five legs recover the leg");
+            let few = Region::parse("0..2", &net).unwrap();
+            assert!(matches!(pauli(&code, &few, 0, &x), Err(CodeError::CannotHold { .. })));
+        }
+    }
+
+    /// One block of dimension 4 and one of 6: digits of prime powers and products.
+    #[test]
+    fn composite_legs_and_arbitrary_operators() {
+        for dim in [4, 6] {
+            let net = network(&format!(
+                r#"
+dimension = {dim}
+boundary = ["a0", "a1", "a2", "a3", "a4"]
+bulk = ["k"]
+tensor = [{{ legs = ["a0", "a1", "a2", "a3", "a4", "k"], block = "six-leg" }}]
+"#
+            ));
+            let code = Code::prepared(&net, &Silent).unwrap();
+            let region = Region::parse("0..3", &net).unwrap();
+            let operator = Array2::from_shape_fn((dim, dim), |(i, j)| {
+                Complex64::new((i * 3 + j) as f64 % 5.0 - 1.0, (i as f64 - j as f64) / 3.0)
+            });
+            let sum = expanded(&code, &region, 0, &operator).unwrap();
+            assert!(sum.terms.len() > 1);
+            let scale = operator.iter().map(|z| z.norm_sqr()).sum::<f64>().sqrt();
+            let m = miss(&code, 0, &operator, &sum);
+            assert!(m < 1e-11 * scale, "dimension {dim}: {m}");
+            let full = array(&code, &region, 0, &operator, 1e-9, &Budget::default(), &Silent);
+            assert!(full.unwrap().defect < 1e-11);
+        }
+    }
+
+    /// A network that is no stabilizer network: six-level four-leg tensor, one leg the bulk.
+    #[test]
+    fn arrays_for_tensors_without_stabilizers() {
+        let net = network(
+            r#"
+dimension = 6
+boundary = ["a0", "a1", "a2"]
+bulk = ["k"]
+tensor = [{ legs = ["a0", "a1", "a2", "k"], block = "four-leg" }]
+"#,
+        );
+        let code = Code::prepared(&net, &Silent).unwrap();
+        assert!(!code.is_stabilizer());
+        let two = Region::parse("0..2", &net).unwrap();
+        let one = Region::parse("1", &net).unwrap();
+        for shift in [true, false] {
+            let a = shift_or_clock(6, shift);
+            let pushed = array(&code, &two, 0, &a, 1e-9, &Budget::default(), &Silent).unwrap();
+            assert!(pushed.defect < 1e-12);
+            // On a code space that fills two legs the operator is unitary.
+            let dagger = pushed.operator.t().mapv(|z| z.conj());
+            let square = linalg::product(&dagger.view(), &pushed.operator.view());
+            let off = square
+                .indexed_iter()
+                .map(|((i, j), z)| (z - if i == j { 1.0 } else { 0.0 }).norm());
+            assert!(off.fold(0.0, f64::max) < 1e-11);
+            let refused = array(&code, &one, 0, &a, 1e-9, &Budget::default(), &Silent);
+            assert!(matches!(refused, Err(CodeError::Defect { .. })));
+        }
+    }
+}

@@ -93,6 +93,8 @@ pub fn probability(tallies: &[Tally], p: f64, z: f64) -> Estimate {
 
 /// Σ weight·fraction with the interval of [`probability`].
 pub(super) fn weighted(tallies: &[Tally], weights: &[f64], z: f64) -> Estimate {
+    // What weighs less than this beside the heaviest cannot move a double.
+    let heaviest = weights.iter().copied().fold(0.0, f64::max);
     let mut fixed = 0.0;
     let mut unknown = 0.0;
     let mut sampled: Vec<(f64, f64, f64)> = Vec::new();
@@ -102,7 +104,7 @@ pub(super) fn weighted(tallies: &[Tally], weights: &[f64], z: f64) -> Estimate {
         }
         if t.complete {
             fixed += w * t.fraction();
-        } else if t.trials == 0 {
+        } else if t.trials == 0 || w < 1e-18 * heaviest {
             unknown += w;
         } else {
             sampled.push((w, t.trials as f64, t.hits as f64));
@@ -138,9 +140,11 @@ fn end(strata: &[(f64, f64, f64)], seen: f64, z: f64, sign: f64) -> f64 {
         let (sum, variance) = tilted(m);
         (sum - seen) * (sum - seen) > z * z * variance
     };
-    let scale = strata.iter().map(|&(w, n, _)| n / w).fold(0.0, f64::max);
-    let (mut near, mut far) = (scale.ln() - 60.0, scale.ln() + 40.0);
-    for _ in 0..90 {
+    // A multiplier far below every n/w changes nothing, one far above tilts all the way.
+    let scales = || strata.iter().map(|&(w, n, _)| (n / w).ln());
+    let mut near = scales().fold(f64::INFINITY, f64::min) - 60.0;
+    let mut far = scales().fold(f64::NEG_INFINITY, f64::max) + 40.0;
+    for _ in 0..100 {
         let middle = 0.5 * (near + far);
         if beyond(middle.exp()) {
             far = middle;
@@ -301,6 +305,30 @@ mod tests {
             }
         }
         assert!((5..=40).contains(&missed), "{missed} of 400 missed");
+    }
+
+    /// Strata of almost no weight once drove the search for the ends past its root, and the
+    /// interval came out as 0 to 1.
+    #[test]
+    fn strata_without_weight_do_not_widen_the_interval() {
+        let n = 77;
+        let tally = |w: usize| Tally {
+            trials: 64,
+            hits: if w > 30 {
+                64
+            } else if w > 12 {
+                32
+            } else {
+                1
+            },
+            complete: w < 4 || w > 73,
+        };
+        let tallies: Vec<Tally> = (0..=n).map(tally).collect();
+        for p in [0.05, 0.1, 0.2, 0.5, 0.95] {
+            let e = probability(&tallies, p, Z95);
+            assert!(e.low <= e.value && e.value <= e.high, "{p}: {e:?}");
+            assert!(e.high - e.low < 0.2, "{p}: {e:?}");
+        }
     }
 
     #[test]

@@ -16,7 +16,7 @@ pub(super) struct Args {
     #[arg(long, value_name = "S", default_value_t = 60.0)]
     seconds: f64,
     /// Minimal supports to print
-    #[arg(long, value_name = "N", default_value_t = 100)]
+    #[arg(long, value_name = "N", default_value_t = 20)]
     supports: usize,
     /// Seed of the random sets that give the first upper bound
     #[arg(long, value_name = "N", default_value_t = 0)]
