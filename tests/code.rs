@@ -442,3 +442,114 @@ block = "bell"
     let exact: Vec<u128> = s.polynomial().unwrap().1.unwrap().into_iter().map(u128::from).collect();
     assert_eq!(tree.polynomial().unwrap(), exact);
 }
+
+struct Ran {
+    status: Option<i32>,
+    out: String,
+    err: String,
+}
+
+fn program(args: &[&str]) -> Ran {
+    let output = std::process::Command::new(env!("CARGO_BIN_EXE_lierne"))
+        .args(args)
+        .current_dir(env!("CARGO_MANIFEST_DIR"))
+        .output()
+        .expect("the program runs");
+    Ran {
+        status: output.status.code(),
+        out: String::from_utf8_lossy(&output.stdout).into_owned(),
+        err: String::from_utf8_lossy(&output.stderr).into_owned(),
+    }
+}
+
+fn object(args: &[&str], status: i32) -> Value {
+    let ran = program(args);
+    assert_eq!(ran.status, Some(status), "{args:?}\n{}\n{}", ran.out, ran.err);
+    serde_json::from_str(&ran.out).unwrap_or_else(|e| panic!("{args:?}: {e}\n{}", ran.out))
+}
+
+const VERTEX: &str = "tests/data/code-vertex.json";
+
+#[test]
+fn the_program_answers_in_json() {
+    let v = object(&["code", VERTEX, "isometry", "--json"], 0);
+    assert_eq!((v["boundary"].as_u64(), v["bulk"].as_u64()), (Some(25), Some(11)));
+    assert_eq!((v["rate"].as_f64(), &v["isometry"]), (Some(0.44), &Value::Bool(true)));
+    assert_eq!(v["evidence"], "geometry");
+    let v = object(&["code", VERTEX, "recover", "--region", "0..2,4,2..4", "--json"], 0);
+    assert_eq!(v["region"], "0..5");
+    for key in ["recoverable", "from_complement", "neither"] {
+        assert!(v[key].is_array(), "{key}");
+    }
+    assert_eq!(v["intervals"].as_array().unwrap().len(), 11);
+    let v = object(&["code", VERTEX, "distance", "--json"], 0);
+    assert_eq!((&v["distance"], &v["lower"], &v["upper"]), (&3.into(), &3.into(), &3.into()));
+    assert_eq!(v["minimal_supports"], 5);
+    assert!(v["upper_by_cuts"].as_u64().unwrap() >= 3);
+    let v = object(&["code", VERTEX, "weights", "--json"], 0);
+    assert_eq!(v["distance"], 3);
+    let push = ["code", VERTEX, "push", "--leg", "k0", "--json", "--operator", "X", "--region"];
+    let v = object(&[&push[..], &["0..15"]].concat(), 0);
+    assert_eq!((&v["possible"], v["terms"].as_array().unwrap().len()), (&true.into(), 1));
+    let v = object(&[&push[..], &["0..4"]].concat(), 1);
+    assert!(v["reason"].as_str().unwrap().contains("commute"), "{v}");
+}
+
+#[test]
+fn erasures_resume_and_are_written() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = |name: &str| folder.path().join(name).display().to_string();
+    let (work, csv, chart) = (path("work.json"), path("curve.csv"), path("curve.svg"));
+    let ask = |samples: &str| -> Vec<String> {
+        [
+            "code", VERTEX, "erasure", "--p", "0.1..0.3:0.1", "--samples", samples, "--legs",
+            "centre", "--listed", "3000", "--bursts", "--json", "--resume", &work, "--csv", &csv,
+            "--chart", &chart,
+        ]
+        .map(str::to_owned)
+        .to_vec()
+    };
+    let args = ask("3000");
+    let args: Vec<&str> = args.iter().map(String::as_str).collect();
+    let first = object(&args, 0);
+    let points = first["codes"][0]["points"].as_array().unwrap();
+    assert_eq!(points.len(), 3);
+    for p in points {
+        let (greedy, exact) = (&p["greedy"], &p["exact"]);
+        assert!(exact["value"].as_f64() <= greedy["value"].as_f64());
+        assert!(greedy["low"].as_f64() <= greedy["value"].as_f64());
+    }
+    assert_eq!(first["codes"][0]["bursts"]["losing"].as_array().unwrap().len(), 26);
+    assert_eq!(object(&args, 0), first, "finished work gives the same answer");
+    let table = std::fs::read_to_string(&csv).unwrap();
+    assert_eq!(table.lines().count(), 1 + 3 * 2, "{table}");
+    assert!(std::fs::read_to_string(&chart).unwrap().starts_with("<svg"));
+    // Work of another request is refused, and the files stay as they are.
+    let other = ask("2000");
+    let other: Vec<&str> = other.iter().map(String::as_str).collect();
+    let ran = program(&other);
+    assert_eq!(ran.status, Some(2), "{}", ran.err);
+    assert!(ran.err.contains("another network or request"), "{}", ran.err);
+    assert_eq!(std::fs::read_to_string(&csv).unwrap(), table);
+}
+
+#[test]
+fn bad_questions_get_one_sentence() {
+    for (args, words) in [
+        (&["recover", "--region", "0..26"][..], "26"),
+        (&["recover", "--region", "0..3,k1"][..], "k1"),
+        (&["distance", "--leg", "k99"][..], "k99"),
+        (&["erasure", "--p", "1.5"][..], "1.5"),
+        (&["erasure", "--rings", "1..2"][..], "rings"),
+        (&["push", "--leg", "k0", "--operator", "Q", "--region", "0..9"][..], "Q"),
+        (&["push", "--leg", "k0", "--operator", "none.npy", "--region", "0..9"][..], "none.npy"),
+    ] {
+        let all = [&["code", VERTEX][..], args].concat();
+        let ran = program(&all);
+        assert_eq!(ran.status, Some(2), "{all:?}\n{}\n{}", ran.out, ran.err);
+        assert!(ran.err.contains(words), "{all:?}: {}", ran.err);
+    }
+    let ran = program(&["code", "networks/loop-3.toml", "isometry"]);
+    assert_eq!(ran.status, Some(2));
+    assert!(ran.err.contains("no bulk leg"), "{}", ran.err);
+}
