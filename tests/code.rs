@@ -45,7 +45,7 @@ dimension = 2
 [tiling]
 polygon = [5, 6]
 around = 4
-rings = 0
+rings = 8
 growth = "edge"
 block = "six-leg"
 bulk = "rings:0,2,4,6,8"
@@ -502,9 +502,25 @@ fn erasures_resume_and_are_written() {
     let (work, csv, chart) = (path("work.json"), path("curve.csv"), path("curve.svg"));
     let ask = |samples: &str| -> Vec<String> {
         [
-            "code", VERTEX, "erasure", "--p", "0.1..0.3:0.1", "--samples", samples, "--legs",
-            "centre", "--listed", "3000", "--bursts", "--json", "--resume", &work, "--csv", &csv,
-            "--chart", &chart,
+            "code",
+            VERTEX,
+            "erasure",
+            "--p",
+            "0.1..0.3:0.1",
+            "--samples",
+            samples,
+            "--legs",
+            "centre",
+            "--listed",
+            "3000",
+            "--bursts",
+            "--json",
+            "--resume",
+            &work,
+            "--csv",
+            &csv,
+            "--chart",
+            &chart,
         ]
         .map(str::to_owned)
         .to_vec()

@@ -195,7 +195,7 @@ struct Bank<'c> {
 /// spread over sizes as each rate would, the other half where they lower the relative errors
 /// of the wanted failure probabilities most, judged by the first half. All samples of one
 /// size are pooled. `saved` is work to go on from; `keep` is handed the work after each
-/// stretch. The result does not depend on threads, interruptions or stretches.
+/// stretch and at the end. The result does not depend on threads, interruptions or stretches.
 ///
 /// Cost: a bundle of 256 sets takes O(legs) word operations for the greedy judgement, and for
 /// each set on which it fails an elimination of 2|E| columns for the exact one.
@@ -245,6 +245,7 @@ pub fn run(
         let before = jobs.len() as u64;
         finished = carry_out(code, request, exact, &more, before, total, &mut work, watch, keep);
     }
+    keep(&work);
     for (w, r) in work.records.iter_mut().enumerate() {
         r.complete = listed[w] && u128::from(r.trials) == choose(n as u64, w as u64);
     }

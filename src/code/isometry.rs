@@ -69,7 +69,7 @@ pub fn judge(code: &Code<'_>, budget: &Budget, watch: &dyn Watch) -> Result<Isom
     let mut out = Isometry {
         boundary: code.boundary(),
         bulk: code.bulk(),
-        rate: weight(net.bulk()) / weight(net.boundary()),
+        rate: rate(code.bulk(), code.boundary(), weight(net.bulk()), weight(net.boundary())),
         isometry: None,
         evidence: Evidence::Bounds,
         blamed: Vec::new(),
@@ -165,6 +165,16 @@ fn by_contraction(
     Ok(())
 }
 
+/// Encoded over physical size; k/n to the last digit where all legs have one dimension.
+fn rate(bulk: usize, boundary: usize, ln_bulk: f64, ln_boundary: f64) -> f64 {
+    if ln_boundary <= 0.0 {
+        return 0.0;
+    }
+    let plain = bulk as f64 / boundary as f64;
+    let weighted = ln_bulk / ln_boundary;
+    if (plain - weighted).abs() <= 1e-12 * weighted { plain } else { weighted }
+}
+
 /// Whether V†V differs from 1/d ⊗ (its trace over the leg): then the leg is not free.
 fn tied(rho: &Array2<Complex64>, dims: &[usize], leg: usize, tolerance: f64) -> bool {
     let d = dims[leg];
@@ -217,7 +227,7 @@ fn ring_counts(code: &Code<'_>) -> Vec<RingCount> {
                 }
             }
             let tensors = ring.iter().filter(|&&x| x == r).count();
-            let rate = if ln_boundary > 0.0 { ln_bulk / ln_boundary } else { 0.0 };
+            let rate = rate(bulk, boundary, ln_bulk, ln_boundary);
             RingCount { ring: r, tensors, boundary, bulk, rate }
         })
         .collect()

@@ -3,10 +3,12 @@
 use super::range::{Rates, Rings, rates, rings};
 use super::{Args as CodeArgs, Code, Common, Failure, Verdict, count, leg};
 use crate::cli::common::write_file;
+use crate::code::CodeError;
 use crate::code::erasure::{Request, Survival, Target, Work, run as sample};
 use crate::code::reach::{Bursts, Reach};
 use crate::code::strata::{Crossing, Tally, crossing};
 use crate::code::tree::Tree;
+use crate::network::Network;
 use crate::study::picture::{Axis, Chart, Look, Point, Series};
 use crate::watch::{News, Watch};
 use serde::{Deserialize, Serialize};
@@ -93,7 +95,8 @@ pub(super) fn run(code: &CodeArgs, args: &Args, common: &Common) -> Result<Verdi
     let mut rows = Vec::new();
     for rings in list {
         let network = code.load(rings)?;
-        if rings.is_some() {
+        if let Some(ring) = rings {
+            grown(&network, ring)?;
             common.tell(News::Stage(&format!("{} boundary legs", network.boundary().len())));
         }
         let wants_ranks = !args.greedy && (args.exact || network.boundary().len() <= EXACT);
@@ -132,6 +135,18 @@ pub(super) fn run(code: &CodeArgs, args: &Args, common: &Common) -> Result<Verdi
         tell(&rows, &crossings, args, common);
     }
     Ok(Verdict::Yes)
+}
+
+/// Refuses a network whose file does not grow it by as many rings as asked.
+fn grown(network: &Network, ring: u32) -> Result<(), Failure> {
+    let name = || network.name().to_owned();
+    let layout = network.layout().filter(|l| !l.ring.is_empty());
+    let Some(layout) = layout else { return Err(CodeError::NoRings { network: name() }.into()) };
+    let last = layout.ring.iter().copied().max().unwrap_or(0);
+    if layout.tiling.is_some() && last != ring {
+        return Err(CodeError::NoSuchRing { ring, network: name(), last }.into());
+    }
+    Ok(())
 }
 
 fn one(

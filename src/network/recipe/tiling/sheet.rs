@@ -43,7 +43,8 @@ impl<'a> Sheet<'a> {
         patch: Patch,
         place: &str,
     ) -> Result<Self, Problem> {
-        let rings = patch.ring_sizes().len();
+        // A patch cut back from outside keeps a selection that fits the recipe's own rings.
+        let rings = patch.ring_sizes().len().max(recipe.growth.rings as usize + 1);
         let tiles = patch.tiles();
         recipe.bulk.check("bulk", place, tiles, rings)?;
         recipe.remove.check("remove", place, tiles, rings)?;
