@@ -428,6 +428,7 @@ mod tests {
     use crate::code::pauli;
     use crate::network::{Limits, Network, Overrides, from_toml};
     use crate::watch::Silent;
+    use ndarray::Dimension;
 
     fn network(text: &str) -> Network {
         let table: toml::Table = text.parse().unwrap();
@@ -458,7 +459,7 @@ tensor = [
         let mut difference = ndarray::ArrayD::<Complex64>::zeros(v.raw_dim());
         for (index, &z) in v.indexed_iter() {
             for t in &pushed.terms {
-                let mut to: Vec<usize> = index.as_array_view().to_vec();
+                let mut to: Vec<usize> = index.slice().to_vec();
                 let mut value = z * Complex64::new(t.coefficient[0], t.coefficient[1]);
                 for site in 0..n {
                     let powers: Vec<Power> = pauli_digits(dims[site])
@@ -481,7 +482,7 @@ tensor = [
             // V·A: entry b of the bulk axis collects V[c]·A[c, b].
             let c = index[n + leg];
             for b in 0..dims[n + leg] {
-                let mut to: Vec<usize> = index.as_array_view().to_vec();
+                let mut to: Vec<usize> = index.slice().to_vec();
                 to[n + leg] = b;
                 difference[to.as_slice()] -= z * operator[(c, b)];
             }
