@@ -19,6 +19,10 @@
 //! | 8 | [`study`] | the whole job from one file |
 //! | 9 | `cli` | the program (feature `cli`) |
 
+#[cfg(doctest)]
+#[doc = include_str!("../README.md")]
+struct Readme;
+
 pub mod block;
 #[cfg(feature = "cli")]
 pub mod cli;
