@@ -136,7 +136,7 @@ mod tests {
     #[test]
     fn four_copies_give_the_second_renyi_entropy_of_the_spectrum() {
         let request = Request::default();
-        for (n, dim) in [(2, 3), (3, 3), (3, 6), (4, 3)] {
+        for (n, dim) in [(2, 3), (3, 3), (2, 6), (4, 3)] {
             let piece = ring(n, dim);
             let Solved::Values(spectrum, ..) =
                 by_contraction(&piece, &request, &Silent).expect("it runs")
