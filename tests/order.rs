@@ -303,7 +303,8 @@ fn long_chains_and_stars_do_not_overflow_the_stack() {
         let shape = graphs::bonds(n, &edges, 2);
         let ask = Request { work: 1_000_000, ..Request::default() };
         let found = search(&shape, &ask, &Silent).unwrap();
-        assert!(found.cost.log2_largest_tensor <= 4.0);
+        // Four legs are the most of any tensor; fewest multiply-adds may take a little more.
+        assert!(found.cost.log2_largest_tensor <= 6.0);
     }
 }
 
