@@ -66,6 +66,9 @@ sites = "0..3,10..13"
 [[entropies.union]]
 count = 30
 parts = [4, 5]
+
+[budget]
+memory = "1GiB"
 "#;
 
 fn write(folder: &Path, name: &str, text: &str) -> PathBuf {

@@ -39,7 +39,7 @@ pub struct Args {
     #[arg(long)]
     check: bool,
     /// Memory for one contraction, e.g. 4GiB; overrides the study's [default: the study's,
-    /// or 70 % of what is free]
+    /// or 70 % of what is free, rounded down to a power of two]
     #[arg(long, value_name = "SIZE", value_parser = parse_bytes)]
     memory: Option<u64>,
     /// Seed of all that is drawn; overrides the study's
@@ -57,7 +57,9 @@ pub fn run(args: &Args, common: &Common) -> Result<Verdict, Failure> {
     if let Some(seed) = args.seed {
         file.seed = seed;
     }
-    let mut limits = Limits::of(&file, default_memory())?;
+    // Rounded down to a power of two: the memory decides which answers are found, so a later
+    // run keeps them although a little more or less is free by then.
+    let mut limits = Limits::of(&file, 1 << default_memory().max(1).ilog2())?;
     if let Some(memory) = args.memory {
         limits.memory = memory;
     }

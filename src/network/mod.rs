@@ -3,6 +3,7 @@
 //! [`NetworkBuilder`] puts one together in code, [`load`] reads a file, a [`Recipe`] makes one
 //! of a known family; all give a checked [`Network`]. [`save`] writes it.
 
+mod as_graph;
 mod build;
 mod file;
 mod frames;
@@ -17,6 +18,7 @@ mod source;
 mod survey;
 mod the_network;
 
+pub use as_graph::{GraphNode, as_graph};
 pub use build::{NetworkBuilder, NetworkError};
 pub use file::{FileError, Format, Problem, from_toml, load, load_with, nearest, save, to_bytes};
 pub use frames::tile_frames;

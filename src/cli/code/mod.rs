@@ -16,11 +16,11 @@ use std::path::PathBuf;
 /// Arguments of `lierne code`.
 #[derive(Debug, clap::Args)]
 #[command(after_help = "Examples:
-  lierne code networks/codes-pentagon-edge.toml isometry
-  lierne code networks/codes-pentagon-edge.toml recover --region 0..12
-  lierne code networks/codes-pentagon-edge.toml distance --leg centre
-  lierne code networks/codes-pentagon-edge.toml erasure --p 0.05..0.5:0.05 --legs centre
-  lierne code networks/codes-pentagon-edge.toml push --leg k0 --operator X --region 0..14
+  lierne code networks/pentagon-code.toml isometry
+  lierne code networks/pentagon-code.toml recover --region 0..12
+  lierne code networks/pentagon-code.toml distance --leg centre
+  lierne code networks/pentagon-code.toml erasure --p 0.05..0.5:0.05 --legs centre
+  lierne code networks/pentagon-code.toml push --leg k0 --operator X --region 0..14
 
 Erasures are located: whoever recovers knows which legs are gone, and nothing else goes
 wrong. Greedy results are lower bounds on what survives. Nothing here models gate noise.")]
