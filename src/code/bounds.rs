@@ -84,7 +84,7 @@ fn holding_set(code: &Code<'_>, target: Target, watch: &dyn Watch) -> Option<Vec
     };
     let mut tries: Vec<(usize, usize, usize)> = legs
         .iter()
-        .flat_map(|&k| (0..n).filter_map(move |s| Some((k, s))))
+        .flat_map(|&k| (0..n).map(move |s| (k, s)))
         .filter_map(|(k, s)| Some((reach.length(s, k)?, s, k)))
         .collect();
     tries.sort_unstable();

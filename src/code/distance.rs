@@ -358,7 +358,7 @@ impl Search {
 fn violation(packing: Packing, checks: usize, v: &Words, negative: bool) -> Vec<u64> {
     if packing.prime == 2 {
         let mut out = v[..checks.div_ceil(64)].to_vec();
-        if checks % 64 != 0 {
+        if !checks.is_multiple_of(64) {
             *out.last_mut().expect("one word at least") &= (1 << (checks % 64)) - 1;
         }
         out
@@ -454,7 +454,7 @@ fn count_broken(packing: Packing, checks: usize, v: &Words) -> u32 {
     if packing.prime == 2 {
         let full = checks / 64;
         let mut n: u32 = v[..full].iter().map(|w| w.count_ones()).sum();
-        if checks % 64 != 0 {
+        if !checks.is_multiple_of(64) {
             n += (v[full] & ((1 << (checks % 64)) - 1)).count_ones();
         }
         n

@@ -102,10 +102,10 @@ pub fn pauli(
 fn turn(angle: f64) -> [f64; 2] {
     let quarters = (angle * 4.0).rem_euclid(4.0);
     match quarters {
-        q if q == 0.0 => [1.0, 0.0],
-        q if q == 1.0 => [0.0, 1.0],
-        q if q == 2.0 => [-1.0, 0.0],
-        q if q == 3.0 => [0.0, -1.0],
+        0.0 => [1.0, 0.0],
+        1.0 => [0.0, 1.0],
+        2.0 => [-1.0, 0.0],
+        3.0 => [0.0, -1.0],
         _ => {
             let (s, c) = (std::f64::consts::TAU * angle).sin_cos();
             [c, s]

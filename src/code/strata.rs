@@ -321,7 +321,7 @@ mod tests {
             } else {
                 1
             },
-            complete: w < 4 || w > 73,
+            complete: !(4..=73).contains(&w),
         };
         let tallies: Vec<Tally> = (0..=n).map(tally).collect();
         for p in [0.05, 0.1, 0.2, 0.5, 0.95] {

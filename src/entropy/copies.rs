@@ -50,11 +50,11 @@ fn value(
     // region legs join 2k + 1 and 2k + 2.
     let open = network.boundary().len();
     let mut of_open = vec![vec![Label::new(0); open]; copies];
-    for k in 0..open {
+    for (k, boundary) in network.boundary().iter().enumerate() {
         for pair in 0..copies / 2 {
             let first = 2 * pair + usize::from(k < piece.region_legs);
             let label = Label::new(shape.sizes.len() as u32);
-            shape.sizes.push(one.sizes[network.boundary()[k].index()]);
+            shape.sizes.push(one.sizes[boundary.index()]);
             of_open[first][k] = label;
             of_open[(first + 1) % copies][k] = label;
         }

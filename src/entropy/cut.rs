@@ -63,7 +63,7 @@ fn weight(dim: usize) -> u64 {
         if p * p > rest {
             p = rest;
         }
-        while rest % p == 0 {
+        while rest.is_multiple_of(p) {
             rest /= p;
             total += ((p as f64).log2() * 4_294_967_296.0).round() as u64;
         }

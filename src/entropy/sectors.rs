@@ -318,7 +318,7 @@ impl Howell {
                 continue;
             }
             match &self.leading[column] {
-                Some(held) if v % held[column] == 0 => {
+                Some(held) if v.is_multiple_of(held[column]) => {
                     subtract(&mut row, held, v / held[column], self.m);
                 }
                 _ => return false,

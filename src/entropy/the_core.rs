@@ -111,7 +111,7 @@ pub(super) fn copy_stabilizer(dim: usize, legs: usize) -> Option<Stabilizer> {
             p = rest;
         }
         let mut m = 0;
-        while rest % p == 0 {
+        while rest.is_multiple_of(p) {
             rest /= p;
             m += 1;
         }

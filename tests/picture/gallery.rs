@@ -83,7 +83,7 @@ pub fn check() {
         let now = arguments(&file);
         let now: Vec<&str> = now.iter().map(String::as_str).collect();
         let fresh = String::from_utf8(super::program::status(&now, 0).stdout).expect("UTF-8");
-        let parts =
+        let _parts =
             |svg: &str| svg.split("desc\">").nth(1).map(|d| d.split('<').next().map(str::to_owned));
         assert_eq!(
             description(&svg),

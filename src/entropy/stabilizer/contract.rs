@@ -158,7 +158,7 @@ impl OnePrime<'_, '_> {
     fn digits(&self, wire: u32) -> u32 {
         let mut dim = self.wires.dim(wire);
         let mut count = 0;
-        while dim % self.prime as usize == 0 {
+        while dim.is_multiple_of(self.prime as usize) {
             dim /= self.prime as usize;
             count += 1;
         }

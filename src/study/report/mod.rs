@@ -1,7 +1,7 @@
 //! `report.html`: one self-contained page to explore a study's result in.
 //!
 //! The page holds its style, its program and its data; it asks the network for nothing. The
-//! data are compact ([`data`]): the graph once for all cases that share it, and for all
+//! data are compact (`data`): the graph once for all cases that share it, and for all
 //! intervals one number each into a table of distinct answers, so that ten thousand boundary
 //! sites stay small. Cuts and closures of a chosen region are found by the page itself.
 
